@@ -1,0 +1,237 @@
+"""The compiled loops of the schemes: plain arrays in, plain arrays out.
+
+Every function that calls another compiled one lives in this file, because the compiled cache does not notice
+an edit in another file.
+
+The rate of change of section p is a quadratic form that is stored as segments,
+
+    rate[p] = sum over segments s of p:  n[big[s]] * dot(coefficient[start[s]:...], n[low[s]:high[s]])
+
+A pair (i, j), j <= i, is met by the segments with big = i, so that births next to i and the losses of i run
+over long contiguous stretches of j. Rows n and n + 1 count the number and the volume that pass the top.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+from numba import njit
+
+
+def compiled(function):  # type: ignore[no-untyped-def]
+    """Compile with a cache on disk, or without one where no place can be written (read-only installs)."""
+    # reassociation lets the dot products use the vector unit; NaN and infinity keep their meaning
+    options = {"nogil": True, "fastmath": {"reassoc", "contract"}}
+    try:
+        return njit(cache=True, **options)(function)
+    except RuntimeError:
+        return njit(**options)(function)
+
+
+@compiled
+def interpolation_births(x, n, order):  # type: ignore[no-untyped-def]
+    """Lagrange weights of every birth x_i + x_j over its `order` nearest pivots.
+
+    `x` holds the n pivots of the grid, continued upward past 2 x[n - 1] by at least order / 2 more, so that
+    births at the top are treated like all others. Returns (first, count, weight): for the pair
+    t = i (i + 1) / 2 + j the targets are first[t] to first[t] + count[t] - 1. Where i is among its own
+    targets its entry is w_i - 1, the net change, which keeps full relative accuracy when x_j is far below x_i.
+    """
+    pairs = n * (n + 1) // 2
+    first = np.zeros(pairs, np.int64)
+    count = np.ones(pairs, np.int64)
+    weight = np.zeros((pairs, order))
+    delta = np.empty(order)
+    for i in range(n):
+        cell = i
+        for j in range(i + 1):
+            t = i * (i + 1) // 2 + j
+            born = x[i] + x[j]
+            while x[cell + 1] <= born * (1.0 + 4e-16):
+                cell += 1
+            if cell > i and born - x[cell] < 1e-13 * born:
+                first[t], weight[t, 0] = cell, 1.0
+                continue
+            if x[cell + 1] - born < 1e-13 * born:
+                first[t], weight[t, 0] = cell + 1, 1.0
+                continue
+            a = max(0, cell - order // 2 + 1)  # at the bottom the stencil shifts
+            first[t], count[t] = a, order
+            for p in range(order):
+                delta[p] = x[a + p] - x[i]
+            others = 0.0
+            own = -1
+            for p in range(order):
+                if a + p == i:
+                    own = p
+                    continue
+                w = 1.0
+                for s in range(order):
+                    if s != p:
+                        w *= (x[j] - delta[s]) / (delta[p] - delta[s])
+                weight[t, p] = w
+                others += w
+            if own >= 0:
+                weight[t, own] = -others
+    return first, count, weight
+
+
+@compiled
+def layout(first, count, n):  # type: ignore[no-untyped-def]
+    """Segments (row_start, big, low, high, start) that hold every birth and loss of the given table."""
+    low = np.full((n + 2, n), n, np.int64)
+    high = np.zeros((n + 2, n), np.int64)
+    for i in range(n):
+        low[i, i], high[i, i] = 0, n
+        for j in range(i + 1):
+            t = i * (i + 1) // 2 + j
+            end = first[t] + count[t]
+            for p in range(first[t], min(end, n)):
+                low[p, i] = min(low[p, i], j)
+                high[p, i] = max(high[p, i], j + 1)
+            if end > n:
+                for p in range(n, n + 2):
+                    low[p, i] = min(low[p, i], j)
+                    high[p, i] = max(high[p, i], j + 1)
+    row_start = np.zeros(n + 3, np.int64)
+    for p in range(n + 2):
+        filled = 0
+        for i in range(n):
+            if high[p, i] > low[p, i]:
+                filled += 1
+        row_start[p + 1] = row_start[p] + filled
+    total = row_start[n + 2]
+    big = np.empty(total, np.int64)
+    seg_low = np.empty(total, np.int64)
+    seg_high = np.empty(total, np.int64)
+    start = np.zeros(total + 1, np.int64)
+    s = 0
+    for p in range(n + 2):
+        for i in range(n):
+            if high[p, i] > low[p, i]:
+                big[s], seg_low[s], seg_high[s] = i, low[p, i], high[p, i]
+                start[s + 1] = start[s] + high[p, i] - low[p, i]
+                s += 1
+    return row_start, big, seg_low, seg_high, start
+
+
+@compiled
+def fill(first, count, weight, row_start, big, low, start, x, kernel):  # type: ignore[no-untyped-def]
+    """Coefficients of the segments for one symmetric kernel matrix (n, n); `x` is continued past the top."""
+    n = kernel.shape[0]
+    where = np.full((n + 2, n), -1, np.int64)
+    for p in range(n + 2):
+        for s in range(row_start[p], row_start[p + 1]):
+            where[p, big[s]] = start[s] - low[s]
+    out = np.zeros(start[-1])
+    for i in range(n):
+        for j in range(i + 1, n):  # i as the smaller partner
+            out[where[i, i] + j] -= kernel[i, j]
+        for j in range(i + 1):
+            t = i * (i + 1) // 2 + j
+            events = kernel[i, j] if j < i else 0.5 * kernel[i, i]
+            a, b = first[t], first[t] + count[t]
+            for p in range(a, b):
+                change = events * weight[t, p - a]
+                if p < n:
+                    out[where[p, i] + j] += change
+                else:
+                    out[where[n, i] + j] += change
+                    out[where[n + 1, i] + j] += change * x[p]
+            if not (a <= i < b):
+                out[where[i, i] + j] -= events
+            if j == i:
+                out[where[i, i] + j] -= events
+    return out
+
+
+@compiled
+def segment_rates(row_start, big, low, high, start, coefficient, number, factor, out):  # type: ignore[no-untyped-def]
+    """Add factor times the rates to `out` (n + 2,); returns their sum, which is not finite if any is not."""
+    total = 0.0
+    for p in range(row_start.size - 1):
+        rate = 0.0
+        for s in range(row_start[p], row_start[p + 1]):
+            c = coefficient[start[s] : start[s + 1]]
+            v = number[low[s] : high[s]]
+            dot = 0.0
+            for q in range(c.size):
+                dot += c[q] * v[q]
+            rate += number[big[s]] * dot
+        out[p] += factor * rate
+        total += out[p]
+    return total
+
+
+@compiled
+def segment_jacobian(row_start, big, low, high, start, coefficient, number, factor, out):  # type: ignore[no-untyped-def]
+    """Add factor times the exact Jacobian d rate[p] / d n[q] to `out` (n + 2, n + 2)."""
+    for p in range(row_start.size - 1):
+        for s in range(row_start[p], row_start[p + 1]):
+            c = coefficient[start[s] : start[s + 1]]
+            v = number[low[s] : high[s]]
+            row = out[p, low[s] : high[s]]
+            scale = factor * number[big[s]]
+            dot = 0.0
+            for q in range(c.size):
+                dot += c[q] * v[q]
+                row[q] += scale * c[q]
+            out[p, big[s]] += factor * dot
+
+
+@compiled
+def monomer_rates(kernel, x, number, factor, out):  # type: ignore[no-untyped-def]
+    """Add factor times the exact discrete Smoluchowski rates on the multiples x_k = (k + 1) x_0."""
+    n = x.size
+    out_total = 0.0
+    beyond_number = 0.0
+    beyond_volume = 0.0
+    for i in range(n):
+        if number[i] == 0.0:
+            continue
+        loss = 0.0
+        scale = factor * number[i]
+        row = kernel[i]
+        # j < i by the smaller partner; births i + j + 1 while inside the grid
+        inside = min(i, n - 1 - i)
+        for j in range(inside):
+            events = scale * row[j] * number[j]
+            loss += events
+            out[j] -= events
+            out[i + j + 1] += events
+        for j in range(inside, i):
+            events = scale * row[j] * number[j]
+            loss += events
+            out[j] -= events
+            beyond_number += events
+            beyond_volume += events * (x[i] + x[j])
+        events = 0.5 * scale * row[i] * number[i]
+        loss += 2.0 * events
+        if 2 * i + 1 < n:
+            out[2 * i + 1] += events
+        else:
+            beyond_number += events
+            beyond_volume += events * 2.0 * x[i]
+        out[i] -= loss
+    out[n] += beyond_number
+    out[n + 1] += beyond_volume
+    for p in range(n + 2):
+        out_total += out[p]
+    return out_total
+
+
+@compiled
+def monomer_jacobian(kernel, x, number, factor, out):  # type: ignore[no-untyped-def]
+    """Add factor times the exact Jacobian of `monomer_rates` to `out` (n + 2, n + 2)."""
+    n = x.size
+    for i in range(n):
+        for j in range(n):
+            # d/dn_j of the losses of i, and of the births i + j + 1 (each unordered pair is met twice)
+            change = factor * kernel[i, j]
+            out[i, j] -= change * number[i]
+            out[i, i] -= change * number[j]
+            born = i + j + 1
+            if born < n:
+                out[born, j] += change * number[i]
+            else:
+                out[n, j] += change * number[i]
+                out[n + 1, j] += change * number[i] * (x[i] + x[j])

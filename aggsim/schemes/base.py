@@ -1,0 +1,130 @@
+"""The contract of a discretisation scheme.
+
+A new scheme is one class with these duties:
+
+1. Be a frozen dataclass whose fields are its options, checked at construction.
+2. `check(grid)`: raise GridError where the scheme cannot work on the grid.
+3. `default_grid(start)`: a grid that suits the scheme for a starting distribution.
+4. `project(start, grid)`: the starting numbers (n_sections,); number and volume exact.
+5. `prepare(grid)`: everything that depends on the grid alone; returns an object whose `aggregation(matrix)`
+   turns a kernel matrix (n_sections, n_sections) [m3/s] into an Operator.
+6. The Operator adds rates and their exact Jacobian to arrays that it is given. Their last axis holds
+   n_sections numbers, then the number and the volume that passed the top (BEYOND entries). Particle volume,
+   the top included, must be kept to round-off: sum x_k rate_k + rate of the volume beyond = 0.
+"""
+
+from __future__ import annotations
+
+from abc import ABC, abstractmethod
+from dataclasses import dataclass
+from typing import Protocol
+
+import numpy as np
+
+from aggsim._checks import FloatArray
+from aggsim.errors import GridError
+from aggsim.schemes import _loops
+from aggsim.sizes import SizeGrid, StartingDistribution, project, starting_grid
+
+BEYOND = 2  # entries after the sections: number and volume beyond the top of the grid
+
+
+class Operator(Protocol):
+    """Rates of change of one process on one grid, a function of the numbers alone."""
+
+    def add_rates(self, number: FloatArray, factor: float, out: FloatArray) -> float:
+        """Add factor * rates to `out` (n_sections + 2,); return the sum of `out`, not finite if any entry is."""
+
+    def add_jacobian(self, number: FloatArray, factor: float, out: FloatArray) -> None:
+        """Add factor * d rate / d number to `out` (n_sections + 2, n_sections + 2)."""
+
+
+class Prepared(Protocol):
+    """A scheme on one grid."""
+
+    @property
+    def grid(self) -> SizeGrid:
+        """The grid."""
+
+    def aggregation(self, matrix: FloatArray) -> Operator:
+        """Operator of aggregation with the kernel matrix (n_sections, n_sections) [m3/s]."""
+
+
+class Scheme(ABC):
+    """A way to turn the aggregation equation into ordinary differential equations for section numbers."""
+
+    @abstractmethod
+    def check(self, grid: SizeGrid) -> None:
+        """Raise GridError where the scheme cannot work on `grid`."""
+
+    @abstractmethod
+    def prepare(self, grid: SizeGrid) -> Prepared:
+        """Compute what depends on the grid alone."""
+
+    def default_grid(self, start: StartingDistribution) -> SizeGrid:
+        """Grid for a starting distribution, with modest room to grow."""
+        return starting_grid(start, per_doubling=3)
+
+    def project(self, start: StartingDistribution, grid: SizeGrid) -> FloatArray:
+        """Numbers (n_sections,) [1/m3] that stand for `start`."""
+        return project(start, grid, moments=2)
+
+
+@dataclass(frozen=True, eq=False)
+class SegmentOperator:
+    """A quadratic form stored as long dot products (see `_loops`)."""
+
+    segments: tuple[FloatArray, ...]
+    coefficient: FloatArray
+
+    def add_rates(self, number: FloatArray, factor: float, out: FloatArray) -> float:
+        total: float = _loops.segment_rates(*self.segments, self.coefficient, number, factor, out)
+        return total
+
+    def add_jacobian(self, number: FloatArray, factor: float, out: FloatArray) -> None:
+        _loops.segment_jacobian(*self.segments, self.coefficient, number, factor, out)
+
+
+@dataclass(frozen=True, eq=False)
+class SegmentScheme:
+    """A table of where each birth lands, and the segments that follow from it, on one grid."""
+
+    grid: SizeGrid
+    pivots: FloatArray  # those of the grid, continued past the largest birth
+    births: tuple[FloatArray, FloatArray, FloatArray]  # first target, targets, weights of each pair
+    segments: tuple[FloatArray, ...]
+
+    @classmethod
+    def build(
+        cls, grid: SizeGrid, pivots: FloatArray, births: tuple[FloatArray, FloatArray, FloatArray]
+    ) -> SegmentScheme:
+        return cls(grid, pivots, births, _loops.layout(births[0], births[1], grid.sections))
+
+    def aggregation(self, matrix: FloatArray) -> SegmentOperator:
+        row_start, big, low, _, start = self.segments
+        coefficient = _loops.fill(
+            *self.births, row_start, big, low, start, self.pivots, np.ascontiguousarray(matrix)
+        )
+        return SegmentOperator(self.segments, coefficient)
+
+
+def continued(grid: SizeGrid, more: int) -> FloatArray:
+    """Pivots of the grid, continued past twice the last one and by `more` pivots on top of that.
+
+    The continuation takes part in the scheme like the grid itself, but what lands there is counted as beyond
+    the grid. Without it, a particle of the last section would leave the grid with any collision at all, at a
+    rate that makes the system stiff for nothing.
+    """
+    x = grid.volume
+    ratio = max(float(x[-1] / x[-2]), 2.0**0.125)  # closely spaced pivots need no close continuation
+    steps = int(np.ceil(np.log(2.0) / np.log(ratio) + 1e-9)) + 1 + more
+    return np.concatenate([x, x[-1] * ratio ** np.arange(1.0, steps + 1.0)])
+
+
+def require_sections(grid: SizeGrid, least: int, scheme: object) -> None:
+    """Raise GridError where the grid has too few sections for the scheme."""
+    if grid.sections < least:
+        raise GridError(
+            f"grid has {grid.sections} sections; {scheme!r} needs at least {least}. "
+            "Try: a larger `largest` or more sections per doubling."
+        )

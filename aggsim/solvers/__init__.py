@@ -1,0 +1,5 @@
+"""Solvers: integration in time."""
+
+from aggsim.solvers import methods as methods
+from aggsim.solvers.simulate import InterruptedRunError as InterruptedRunError
+from aggsim.solvers.simulate import simulate as simulate

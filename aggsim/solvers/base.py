@@ -1,0 +1,71 @@
+"""The contract of an integration method.
+
+A new method is one class with these duties:
+
+1. Be a frozen dataclass of options with a `max_evaluations` field and a one-word `name`.
+2. `stepper(...)` returns an object that advances one step at a time, so that output, progress, limits and
+   interruption stay in one loop outside the method.
+3. The stepper uses the exact Jacobian that it is given: that is what keeps linear invariants (the particle
+   volume) at round-off when the method is implicit.
+4. `at(times)` interpolates inside the last step without loss of order.
+"""
+
+from __future__ import annotations
+
+from abc import ABC, abstractmethod
+from collections.abc import Callable
+from dataclasses import dataclass
+from typing import Protocol
+
+from aggsim._checks import FloatArray
+
+Rates = Callable[[float, FloatArray], FloatArray]
+
+
+class Stepper(Protocol):
+    """An integration under way."""
+
+    @property
+    def time(self) -> float:
+        """Time [s] reached."""
+
+    @property
+    def state(self) -> FloatArray:
+        """State at `time`, a flat array."""
+
+    def step(self) -> str | None:
+        """Advance one step; return None, or the reason why it was not possible."""
+
+    def at(self, times: FloatArray) -> FloatArray:
+        """States (n_times, n_state) at times inside the last step."""
+
+
+@dataclass(frozen=True, kw_only=True)
+class Method(ABC):
+    """A way to integrate ordinary differential equations in time.
+
+    Parameters
+    ----------
+    max_evaluations : int
+        Rate evaluations after which a run is stopped.
+    """
+
+    max_evaluations: int = 200_000
+
+    @property
+    def name(self) -> str:
+        """Name for reports."""
+        return type(self).__name__
+
+    @abstractmethod
+    def stepper(
+        self,
+        rates: Rates,
+        jacobian: Rates,
+        start: float,
+        state: FloatArray,
+        stop: float,
+        rtol: float,
+        atol: FloatArray,
+    ) -> Stepper:
+        """Begin to integrate from `start` to `stop` [s]."""

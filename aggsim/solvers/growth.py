@@ -1,0 +1,92 @@
+"""Watching the largest particles: when the grid must grow, and when the distribution is about to gel."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from aggsim._checks import FloatArray
+from aggsim.sizes import SizeGrid
+
+# Share of the volume in the uppermost sections at which a grid of our own choice is extended. Less would follow
+# particles too few to matter: where the largest ones sweep up the small faster than they grow (settling), a
+# smaller share brings the numerical gelation forward by chasing a tail of round-off size.
+TOP_SHARE = 1e-7
+BEYOND_SHARE = 1e-3  # share of the volume past the top at which a run that cannot be extended is judged
+EXTENSION = 5.0  # doublings of volume that one extension adds
+LARGEST_AUTOMATIC_GRID = 400  # sections
+REMAINING = 1e-3  # a run stops when gelation is nearer than this share of the time that led to it
+STEEPEST = -0.05  # slope of the growth time against time below which it runs into zero
+
+_GUARD = 1.0  # doublings below the top that count as uppermost
+
+
+@dataclass(frozen=True)
+class Approach:
+    """Growth time M2 / (dM2/dt) [s] of the second moment, seen at one moment."""
+
+    time: float
+    growth_time: float
+
+
+class GrowthWatch:
+    """Follows the top of the grid and the second volume moment M2 of one run.
+
+    Where a kernel gels, M2 becomes infinite at a finite time t_g, and its growth time falls linearly,
+    M2 / (dM2/dt) = (t_g - t) / p. Two sightings give p and with it t_g.
+    """
+
+    def __init__(self, volume: float) -> None:
+        self._volume = volume
+        self._seen: list[Approach] = []
+        self._begin = 0.0
+        self._next = 0.0
+
+    def begin(self, time: float) -> None:
+        """Forget what was seen before `time`: a strength has jumped."""
+        self._seen, self._begin, self._next = [], time, 0.0
+
+    def on(self, grid: SizeGrid) -> None:
+        """Watch this grid from now on."""
+        x = grid.volume
+        first = min(int(np.searchsorted(x, x[-1] / 2.0**_GUARD)), x.size - 6)
+        weights = np.zeros((2, x.size + 2))
+        weights[0, max(first, 0) : x.size] = x[max(first, 0) :]
+        weights[0, -1] = 1.0
+        weights[1, : x.size] = x * x
+        self._weights = weights
+        self._top = float(x[-1])
+
+    def look(self, state: FloatArray) -> tuple[float, bool]:
+        """Share of the volume at and beyond the top, and whether M2 has doubled since the last sighting."""
+        top, second = self._weights @ state
+        return float(top) / self._volume, bool(second >= self._next)
+
+    def sight(self, time: float, state: FloatArray, rates: FloatArray) -> None:
+        """Note the growth time of M2."""
+        second = float(self._weights[1] @ state)
+        # what leaves the top would have counted at least with the volume of the top
+        gain = float(self._weights[1] @ rates) + float(rates[-1]) * self._top
+        self._next = 2.0 * second
+        if gain > 0.0:
+            self._seen.append(Approach(time, second / gain))
+
+    def gelation_time(self) -> float | None:
+        """Time [s] at which M2 is heading for infinity, None where its growth time does not run into zero."""
+        if len(self._seen) < 3:
+            return None
+        before, last = self._seen[-2], self._seen[-1]
+        if not (self._seen[-3].growth_time > before.growth_time > last.growth_time):
+            return None
+        slope = (last.growth_time - before.growth_time) / (last.time - before.time)
+        if slope > STEEPEST:
+            return None
+        return last.time - last.growth_time / slope
+
+    def gelation_near(self, time: float) -> float | None:
+        """Gelation time [s] where it is so near that the run must end, else None."""
+        expected = self.gelation_time()
+        if expected is None or expected - time > REMAINING * (time - self._begin):
+            return None
+        return expected

@@ -1,0 +1,196 @@
+"""One run under way: steps, jumps in time, a grid that grows, and the reasons to end."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+
+import numpy as np
+
+from aggsim._checks import FloatArray
+from aggsim.errors import GridError
+from aggsim.result import Outcome, Status
+from aggsim.schemes import Scheme
+from aggsim.sizes import SizeGrid
+from aggsim.solvers.base import Method, Stepper
+from aggsim.solvers.growth import (
+    BEYOND_SHARE,
+    EXTENSION,
+    LARGEST_AUTOMATIC_GRID,
+    TOP_SHARE,
+    GrowthWatch,
+)
+from aggsim.solvers.progress import Progress
+from aggsim.solvers.system import NotFiniteError, System
+from aggsim.vessels import Vessel
+
+ATOL = 1e-6  # absolute tolerance over rtol, in units of the number or volume scale of a section
+
+
+@dataclass(eq=False)
+class Run:
+    """State and bookkeeping of one run; `execute` carries it out."""
+
+    vessel: Vessel
+    scheme: Scheme
+    method: Method
+    grid: SizeGrid
+    start: FloatArray
+    outputs: FloatArray
+    rtol: float
+    automatic: bool
+    progress: Progress
+    steps: int = 0
+    restarts: int = -1  # the first start is no restart
+    extensions: int = 0
+    _judged: bool = False
+    _spent: tuple[int, int] = (0, 0)
+    _rows: list[tuple[float, FloatArray]] = field(default_factory=list)
+
+    def __post_init__(self) -> None:
+        self.initial_volume = float(self.start @ self.grid.volume)
+        self._initial_number = float(self.start.sum())
+        self._time = 0.0
+        self._state = np.concatenate([self.start, [0.0, 0.0]])
+        self._watch = GrowthWatch(self.initial_volume)
+        self._use(self.grid)
+
+    def execute(self) -> Status:
+        """Integrate to the last output time, or to the reason why that is not possible."""
+        end = float(self.outputs[-1])
+        if self.outputs[0] == 0.0:
+            self._rows.append((0.0, self._state.copy()))
+        jumps = [t for t in self._system.jumps if 0.0 < t < end]
+        status = None
+        try:
+            for stop in [*jumps, end] if end > 0.0 else []:
+                self._watch.begin(self._time)
+                status = self._segment(self._time, stop)
+                if status is not None:
+                    break
+        except KeyboardInterrupt:
+            status = Status(Outcome.INTERRUPTED, self._time)
+        except NotFiniteError as error:
+            status = Status(Outcome.NOT_FINITE, self._time, f"{error}; look at the kernel for these sizes.")
+        if status is None:
+            return Status(Outcome.COMPLETED, end)
+        if not self._rows or self._rows[-1][0] < self._time:
+            self._rows.append((self._time, self._state.copy()))
+        return status
+
+    @property
+    def rate_evaluations(self) -> int:
+        """Rate evaluations on all grids so far."""
+        return self._spent[0] + self._system.rate_evaluations
+
+    @property
+    def jacobian_evaluations(self) -> int:
+        """Jacobian evaluations on all grids so far."""
+        return self._spent[1] + self._system.jacobian_evaluations
+
+    def times(self) -> FloatArray:
+        """Times of the recorded states (n_times,) [s]."""
+        return np.array([t for t, _ in self._rows])
+
+    def states(self) -> FloatArray:
+        """Recorded states (n_times, n_sections + 2) on the final grid."""
+        return np.array([self._padded(state) for _, state in self._rows])
+
+    def _use(self, grid: SizeGrid) -> None:
+        self.grid = grid
+        self._system = System(self.vessel, self.scheme, grid)
+        self._watch.on(grid)
+        scale = np.minimum(self._initial_number, self.initial_volume / grid.volume)
+        beyond = [self._initial_number, self.initial_volume]
+        self._atol = self.rtol * ATOL * np.concatenate([scale, beyond])
+
+    def _padded(self, state: FloatArray) -> FloatArray:
+        missing = self.grid.sections + 2 - state.size
+        return np.concatenate([state[:-2], np.zeros(missing), state[-2:]]) if missing else state
+
+    def _begin(self, start: float, stop: float) -> Stepper:
+        self.restarts += 1
+        self._system.on(start, stop)
+        return self.method.stepper(
+            self._system.rates,
+            self._system.jacobian,
+            self._time,
+            self._state,
+            stop,
+            self.rtol,
+            self._atol,
+        )
+
+    def _segment(self, start: float, stop: float) -> Status | None:
+        """Integrate over one stretch without jumps; None when its end is reached."""
+        stepper = self._begin(start, stop)
+        next_output = int(np.searchsorted(self.outputs, self._time, side="right"))
+        while self._time < stop:
+            failure = stepper.step()
+            if failure is not None:
+                return self._gelled() or Status(Outcome.STALLED, self._time, f"{self.method.name}: {failure}")
+            self.steps += 1
+            state = stepper.state
+            share, doubled = self._watch.look(state)
+            if self.automatic and share > TOP_SHARE and self._extend():
+                # the step is taken again from the last state, so that nothing has passed the top
+                stepper = self._begin(start, stop)
+                continue
+            reached = stepper.time
+            after = int(np.searchsorted(self.outputs, reached, side="right"))
+            if after > next_output:
+                inside = self.outputs[next_output:after]
+                self._rows += list(zip(inside.tolist(), stepper.at(inside), strict=True))
+                next_output = after
+            self._time, self._state = reached, state.copy()
+            full = share > BEYOND_SHARE and not self._judged
+            if doubled or full:
+                self._judged |= full
+                self._watch.sight(reached, state, self._system.rates(reached, state))
+                status = self._verdict(share)
+                if status is not None:
+                    return status
+            if self.rate_evaluations > self.method.max_evaluations:
+                detail = f"max_evaluations={self.method.max_evaluations}; try a larger one, or a looser rtol."
+                return Status(Outcome.WORK_LIMIT, self._time, detail)
+            self.progress.update(reached / float(self.outputs[-1]), reached)
+        return None
+
+    def _extend(self) -> bool:
+        """Continue the grid upward; False where it may not grow any more."""
+        try:
+            grid = self.grid.extended(self.grid.volume[-1] * 2.0**EXTENSION)
+            self.scheme.check(grid)
+        except GridError:
+            return False
+        if grid.sections > LARGEST_AUTOMATIC_GRID:
+            return False
+        self._spent = (self.rate_evaluations, self.jacobian_evaluations)
+        self._use(grid)
+        self._state = self._padded(self._state)
+        self.extensions += 1
+        return True
+
+    def _verdict(self, share: float) -> Status | None:
+        """Gelation, or an outgrown grid of our own choice."""
+        expected = self._watch.gelation_near(self._time)
+        if expected is not None or share > BEYOND_SHARE:
+            gelled = self._gelled()
+            if gelled is not None:
+                return gelled
+        if share > BEYOND_SHARE and self.automatic:
+            detail = (
+                f"{self.grid.sections} sections reach {self.grid.volume[-1]:.3g} m3. Try: fewer sections per "
+                "doubling on a grid of your own, or shorter times."
+            )
+            return Status(Outcome.OUTGROWN, self._time, detail)
+        return None
+
+    def _gelled(self) -> Status | None:
+        expected = self._watch.gelation_time()
+        if expected is None:
+            return None
+        detail = (
+            f"The second moment becomes infinite at about t = {expected:.6g} s. Beyond it the equation loses "
+            "volume to particles without limit of size; a sink (settling out, breakage) or a shorter time helps."
+        )
+        return Status(Outcome.GELATION, self._time, detail, gelation_time=expected)

@@ -1,0 +1,66 @@
+"""The right-hand side of one run on one grid: the terms of a vessel, added up."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable
+from typing import Any
+
+import numpy as np
+
+from aggsim._checks import FloatArray
+from aggsim.schemes import BEYOND, Scheme
+from aggsim.sizes import SizeGrid
+from aggsim.vessels import Vessel
+
+
+class NotFiniteError(ArithmeticError):
+    """A rate of change was not finite; methods would step on with it without a word."""
+
+
+def _always_one(_: float) -> float:
+    return 1.0
+
+
+class System:
+    """Rates and exact Jacobian of a vessel on a grid, with counts of their use."""
+
+    def __init__(self, vessel: Vessel, scheme: Scheme, grid: SizeGrid) -> None:
+        self.grid = grid
+        self.size = grid.sections + BEYOND
+        self.rate_evaluations = 0
+        self.jacobian_evaluations = 0
+        self._terms = vessel.terms(scheme.prepare(grid))
+        self._active: list[tuple[Any, Callable[[float], float]]] = []
+        self.on(0.0, math.inf)
+
+    @property
+    def jumps(self) -> list[float]:
+        """Times [s] at which a strength jumps, sorted."""
+        return sorted({t for term in self._terms if term.strength is not None for t in term.strength.jumps})
+
+    def on(self, start: float, stop: float) -> None:
+        """Use the strengths of the interval [start, stop], which holds no jump inside."""
+        self._active = [
+            (term.operator, _always_one if term.strength is None else term.strength.on(start, stop))
+            for term in self._terms
+        ]
+
+    def rates(self, time: float, state: FloatArray) -> FloatArray:
+        """Rates of change of the state (n_sections + 2,)."""
+        self.rate_evaluations += 1
+        out = np.zeros(self.size)
+        total = 0.0
+        for operator, strength in self._active:
+            total = operator.add_rates(state, strength(time), out)
+        if not math.isfinite(total):
+            raise NotFiniteError(f"a rate of change was not finite at t = {time:.6g} s")
+        return out
+
+    def jacobian(self, time: float, state: FloatArray) -> FloatArray:
+        """Exact Jacobian of `rates` (n_sections + 2, n_sections + 2)."""
+        self.jacobian_evaluations += 1
+        out = np.zeros((self.size, self.size))
+        for operator, strength in self._active:
+            operator.add_jacobian(state, strength(time), out)
+        return out

@@ -1,0 +1,57 @@
+"""Aggregation in a well-mixed suspension."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+
+from aggsim._checks import FloatArray
+from aggsim.errors import InputError
+from aggsim.vessels.base import Collisions, Term
+
+
+@dataclass(frozen=True)
+class Aggregation:
+    """Collisions that stick, at the rates of a kernel.
+
+    Parameters
+    ----------
+    kernel : Kernel
+        Anything with `part_matrices(volume)`, which yields (name, matrix [m3/s], strength or None) per part.
+
+    Raises
+    ------
+    InputError
+        If `kernel` is not a kernel.
+    """
+
+    kernel: Any
+
+    def __post_init__(self) -> None:
+        if not callable(getattr(self.kernel, "part_matrices", None)):
+            raise InputError(
+                f"kernel={self.kernel!r} is not a collision kernel. Allowed: a kernel of aggsim.kernels, or a sum "
+                "of them. Try: aggsim.kernels.from_function(f, name='mine') for a function of two volumes."
+            )
+
+    def terms(self, prepared: Any) -> list[Term]:
+        groups: dict[int, tuple[Any, FloatArray]] = {}
+        for _, matrix, strength in self.kernel.part_matrices(prepared.grid.volume):
+            key = id(strength)  # parts that share a factor in time share an operator
+            if key in groups:
+                groups[key] = (strength, groups[key][1] + matrix)
+            else:
+                groups[key] = (strength, matrix)
+        return [Term(prepared.aggregation(matrix), strength) for strength, matrix in groups.values()]
+
+    def collisions(self, volume: FloatArray, times: FloatArray, number: FloatArray) -> dict[str, Collisions]:
+        out = {}
+        for name, matrix, strength in self.kernel.part_matrices(volume):
+            factor = np.ones(times.size) if strength is None else np.array([strength(t) for t in times])
+            met = number @ matrix
+            events = 0.5 * factor * np.einsum("tk,tk->t", met, number)
+            flux = factor * np.einsum("tk,tk->t", met, number * volume)
+            out[name] = Collisions(events, flux)
+        return out
