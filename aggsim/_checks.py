@@ -87,8 +87,8 @@ def diameter(name: str, value: Any) -> float:
     number = scalar(name, value, "m", above=0.0, hint="a diameter in metres, such as 400e-9 for 400 nm")
     if number > LARGEST_DIAMETER:
         raise InputError(
-            f"{name}={number:g} m is larger than a particle can be (at most {LARGEST_DIAMETER:g} m); diameters are in metres. "
-            f"Try: {number:g}e-6 if you meant {number:g} um, {number:g}e-9 if you meant {number:g} nm."
+            f"{name}={number:g} m is larger than a particle can be (at most {LARGEST_DIAMETER:g} m); "
+            f"diameters are in metres. Try: {number:g}e-6 if you meant {number:g} um, {number:g}e-9 if you meant {number:g} nm."
         )
     if number < SMALLEST_DIAMETER:
         raise InputError(

@@ -125,7 +125,8 @@ class Result:
         if side[k + 1] == 0:
             return float(self.times[k + 1])
         curve = PchipInterpolator(self.times, y - level)
-        return float(brentq(curve, self.times[k], self.times[k + 1], xtol=1e-12 * self.times[k + 1]))
+        low, high = float(self.times[k]), float(self.times[k + 1])
+        return float(brentq(lambda t: float(curve(t)), low, high, xtol=1e-12 * high))
 
     def number_half_life(self) -> float:
         """Time [s] at which half of the particles that were there at the first output are left, NaN if never."""

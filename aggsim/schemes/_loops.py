@@ -20,11 +20,11 @@ from numba import njit
 def compiled(function):  # type: ignore[no-untyped-def]
     """Compile with a cache on disk, or without one where no place can be written (read-only installs)."""
     # reassociation lets the dot products use the vector unit; NaN and infinity keep their meaning
-    options = {"nogil": True, "fastmath": {"reassoc", "contract"}}
+    math = {"reassoc", "contract"}
     try:
-        return njit(cache=True, **options)(function)
+        return njit(function, cache=True, nogil=True, fastmath=math)
     except RuntimeError:
-        return njit(**options)(function)
+        return njit(function, nogil=True, fastmath=math)
 
 
 @compiled

@@ -20,11 +20,16 @@ from dataclasses import dataclass
 from typing import Protocol
 
 import numpy as np
+from numpy.typing import NDArray
 
 from aggsim._checks import FloatArray
 from aggsim.errors import GridError
 from aggsim.schemes import _loops
 from aggsim.sizes import SizeGrid, StartingDistribution, project, starting_grid
+
+Births = tuple[
+    NDArray[np.int64], NDArray[np.int64], FloatArray
+]  # first target, targets, weights of each pair
 
 BEYOND = 2  # entries after the sections: number and volume beyond the top of the grid
 
@@ -91,13 +96,11 @@ class SegmentScheme:
 
     grid: SizeGrid
     pivots: FloatArray  # those of the grid, continued past the largest birth
-    births: tuple[FloatArray, FloatArray, FloatArray]  # first target, targets, weights of each pair
+    births: Births
     segments: tuple[FloatArray, ...]
 
     @classmethod
-    def build(
-        cls, grid: SizeGrid, pivots: FloatArray, births: tuple[FloatArray, FloatArray, FloatArray]
-    ) -> SegmentScheme:
+    def build(cls, grid: SizeGrid, pivots: FloatArray, births: Births) -> SegmentScheme:
         return cls(grid, pivots, births, _loops.layout(births[0], births[1], grid.sections))
 
     def aggregation(self, matrix: FloatArray) -> SegmentOperator:

@@ -6,11 +6,9 @@ import math
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
-from aggsim._checks import FloatArray
 from aggsim.errors import GridError
-from aggsim.schemes.base import Scheme, SegmentScheme, continued, require_sections
+from aggsim.schemes.base import Births, Scheme, SegmentScheme, continued, require_sections
 from aggsim.sizes import SizeGrid, StartingDistribution, starting_grid
 
 
@@ -63,7 +61,7 @@ def _sections_per_doubling(grid: SizeGrid) -> int:
     return round(q)
 
 
-def _births(n: int, q: int) -> tuple[NDArray[np.int64], NDArray[np.int64], FloatArray]:
+def _births(n: int, q: int) -> Births:
     """First target, number of targets and weights of each pair (i, j <= i), as `_loops.layout` reads them."""
     ratio = 2.0 ** (1.0 / q)
     # the interval depends on the distance d = i - j alone; 1e-9 keeps exact integers from rounding down

@@ -161,10 +161,10 @@ def quantile_diameter(
     equal volume; what is counted stays the same.
 
     The weight n_k d_k^r is read as density over kappa, interpolated by a cubic spline and integrated; no
-    quantile lies outside the pivots. Where a spline would undershoot by more than 5e-3 of the whole (jumps,
-    single sizes, noise) the density is piecewise linear with limited slopes [3], a section that towers above
-    both neighbours narrows towards its pivot, and negative entries are levelled out. A section that holds all
-    but 1e-9 of the weight is itself the answer.
+    quantile lies outside the pivots. Where a spline would undershoot by more than 5e-3 of the whole or miss the
+    sum by 1e-2 (jumps, single sizes, noise) the density is piecewise linear with limited slopes [3], a section
+    that towers above both neighbours narrows towards its pivot, and negative entries are levelled out. A
+    section that holds all but 1e-9 of the weight is itself the answer.
 
     Raises DistributionError where nothing is there.
     """

@@ -221,8 +221,8 @@ class _GammaLaw(_Law):
                 f"k={k:g} is not allowed; allowed: k above {-self._shape:g}, lower moments are infinite. "
                 "Try: a law without particles of vanishing size, such as LogNormal."
             )
-        ratio = math.lgamma(self._shape + k) - math.lgamma(self._shape)
-        return self.number * math.exp(ratio + k * math.log(self.mean_volume / self._shape))
+        ratio = float(special.poch(self._shape, k))  # Gamma(a + k) / Gamma(a)
+        return self.number * ratio * float(self.mean_volume / self._shape) ** k
 
     def density(self, volume: ArrayLike) -> FloatArray:
         x = np.asarray(volume, dtype=np.float64) * (self._shape / self.mean_volume)

@@ -32,7 +32,6 @@ class System:
         self.jacobian_evaluations = 0
         self._terms = vessel.terms(scheme.prepare(grid))
         self._active: list[tuple[Any, Callable[[float], float]]] = []
-        self.on(0.0, math.inf)
 
     @property
     def jumps(self) -> list[float]:

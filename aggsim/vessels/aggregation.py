@@ -37,14 +37,15 @@ class Aggregation:
             )
 
     def terms(self, prepared: Any) -> list[Term]:
-        groups: dict[int, tuple[Any, FloatArray]] = {}
+        matrices: list[FloatArray] = []  # parts that share a factor in time share an operator
+        strengths: list[Any] = []
         for _, matrix, strength in self.kernel.part_matrices(prepared.grid.volume):
-            key = id(strength)  # parts that share a factor in time share an operator
-            if key in groups:
-                groups[key] = (strength, groups[key][1] + matrix)
+            if strength in strengths:
+                matrices[strengths.index(strength)] += matrix
             else:
-                groups[key] = (strength, matrix)
-        return [Term(prepared.aggregation(matrix), strength) for strength, matrix in groups.values()]
+                matrices.append(matrix)
+                strengths.append(strength)
+        return [Term(prepared.aggregation(m), s) for m, s in zip(matrices, strengths, strict=True)]
 
     def collisions(self, volume: FloatArray, times: FloatArray, number: FloatArray) -> dict[str, Collisions]:
         out = {}

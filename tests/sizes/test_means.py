@@ -198,7 +198,7 @@ def test_quantiles_of_monomers_start_at_the_monomer_and_rise_smoothly():
     # constant kernel from monomers: n_k = T^(k-1) / (1+T)^(k+1); nothing is smaller than a monomer
     k = np.arange(1.0, 200.0)
     x = means.volume_of(4e-7) * k
-    times = np.array([1e-6, 1e-3, 1e-2, 0.05, 0.2, 0.5, 1.0, 2.0, 5.0, 10.0])[:, None]
+    times = np.concatenate([[1e-6], np.geomspace(1e-3, 10.0, 150)])[:, None]
     n = times ** (k - 1) / (1 + times) ** (k + 1)
     for r in (0, 3):
         d = means.quantile_diameter(x, n, SHARES, r)

@@ -1,0 +1,127 @@
+"""The house look: colours, size and time axes, legends.
+
+Axes are annotated as Any because the drawing library is imported inside functions only.
+"""
+
+from __future__ import annotations
+
+import math
+from typing import Any
+
+import numpy as np
+
+from aggsim._checks import FloatArray
+from aggsim.outputs._units import Unit, time_unit
+
+# Okabe and Ito (2008), Color Universal Design, in an order that keeps neighbours apart; the pale one is last
+COLOURS = ("#0072B2", "#D55E00", "#009E73", "#CC79A7", "#E69F00", "#56B4E9", "#000000", "#F0E442")
+LINES = ("-", "--", "-.", (0, (1, 1.2)), (0, (6, 1.5, 1, 1.5, 1, 1.5)))
+GREY = "0.35"
+
+_LOG_LIKE = 0.2  # output times with a median below this share of the last are spaced as logarithms
+
+
+def axis(ax: Any, *, size: tuple[float, float] = (6.4, 4.0)) -> tuple[Any, bool]:
+    """The axis to draw on, and whether its figure was made here."""
+    if ax is not None:
+        return ax, False
+    import matplotlib.pyplot as plt
+
+    return plt.subplots(figsize=size, layout="constrained")[1], True
+
+
+def dress(ax: Any) -> None:
+    """Light grid behind the data and no frame on the upper and right side."""
+    ax.grid(True, which="major", color="0.9", linewidth=0.8)
+    ax.set_axisbelow(True)
+    ax.spines[["top", "right"]].set_visible(False)
+
+
+def sequence(count: int) -> list[Any]:
+    """Colours from dark to bright for curves in order of time, without the palest end."""
+    import matplotlib as mpl
+
+    return list(mpl.colormaps["viridis"](np.linspace(0.0, 0.86, count) if count > 1 else [0.35]))
+
+
+def legend(ax: Any, own: bool, title: str | None = None) -> None:
+    """Legend beside the axis where the figure is ours, else where it hides least of the data."""
+    look: dict[str, Any] = {"frameon": False, "fontsize": "small", "title_fontsize": "small", "title": title}
+    if own:
+        ax.legend(loc="center left", bbox_to_anchor=(1.01, 0.5), borderaxespad=0.0, **look)
+    else:
+        ax.legend(loc="best", **look)
+
+
+def legend_above(ax: Any, handles: list[Any] | None = None, columns: int = 3) -> None:
+    """Legend above an axis that is filled with data to its frame."""
+    look: dict[str, Any] = {"frameon": False, "fontsize": "small", "borderaxespad": 0.2}
+    if handles is not None:
+        look["handles"] = handles
+    ax.legend(loc="lower left", bbox_to_anchor=(0.0, 1.0), ncols=columns, **look)
+
+
+def log_size(axis_part: Any, low: float, high: float) -> None:
+    """Ticks of a logarithmic size axis (`ax.xaxis` or `ax.yaxis`) from `low` to `high`, as plain numbers."""
+    from matplotlib.ticker import FixedLocator, FuncFormatter, LogLocator, MaxNLocator, NullFormatter
+
+    decades = math.log10(high / low)
+    minor = LogLocator(subs=tuple(range(2, 10)), numticks=100)
+    if decades > 3.0:
+        major = LogLocator(numticks=100)
+    elif decades > 1.2:
+        major = LogLocator(subs=(1, 2, 5), numticks=100)
+    elif decades > 0.6:
+        major = LogLocator(subs=(1, 1.5, 2, 3, 4, 5, 7), numticks=100)
+    else:
+        major = MaxNLocator(6, steps=[1, 2, 2.5, 5, 10])
+        minor = FixedLocator([])
+    axis_part.set_major_locator(major)
+    axis_part.set_minor_locator(minor)
+    axis_part.set_major_formatter(FuncFormatter(lambda value, _: f"{value:.6g}"))
+    axis_part.set_minor_formatter(NullFormatter())
+
+
+def widen(ax: Any, had_data: bool, low: float, high: float) -> tuple[float, float]:
+    """Limits of the size axis that take in `low` to `high` and what was drawn before."""
+    if had_data:
+        before = ax.get_xlim()
+        low, high = min(low, before[0]), max(high, before[1])
+    return low, high
+
+
+def time_axis(ax: Any, times: FloatArray) -> Unit:
+    """Set up the time axis for these output times [s] and return its unit.
+
+    Outputs that are spaced as logarithms get a logarithmic axis; a start at t = 0 is kept on it by a linear
+    stretch up to the first output after it.
+    """
+    positive = times[times > 0.0]
+    if positive.size < 3 or float(np.median(positive)) > _LOG_LIKE * float(positive[-1]):
+        unit = time_unit(float(times[-1]))
+        ax.set_xlim(float(times[0]) / unit.size, float(times[-1]) / unit.size or 1.0)
+    else:
+        unit = time_unit(float(np.median(positive)))
+        first, last = float(positive[0]) / unit.size, float(times[-1]) / unit.size
+        if times[0] == 0.0:
+            ax.set_xscale("symlog", linthresh=first, linscale=0.5)
+            ax.set_xlim(0.0, last)
+            _thin_decades(ax, first, last)
+        else:
+            ax.set_xscale("log")
+            ax.set_xlim(first, last)
+    ax.set_xlabel(f"time [{unit.glyph}]")
+    return unit
+
+
+def _thin_decades(ax: Any, first: float, last: float) -> None:
+    """Zero and whole decades on the axis that is linear up to `first`."""
+    from matplotlib.ticker import FixedLocator, NullFormatter
+
+    lowest, highest = math.ceil(math.log10(first) - 1e-9), math.floor(math.log10(last) + 1e-9)
+    step = max(1, (highest - lowest) // 6)
+    decades = [10.0**k for k in range(lowest, highest + 1, step)]
+    ax.xaxis.set_major_locator(FixedLocator([0.0, *decades]))
+    between = [m * 10.0**k for k in range(lowest - 1, highest + 1) for m in range(2, 10)]
+    ax.xaxis.set_minor_locator(FixedLocator([t for t in between if first <= t <= last]))
+    ax.xaxis.set_minor_formatter(NullFormatter())

@@ -1,0 +1,112 @@
+"""Units in which sizes and times are shown, and the output times that are shown."""
+
+from __future__ import annotations
+
+from typing import Any, NamedTuple, Protocol
+
+import numpy as np
+
+from aggsim import _checks
+from aggsim._checks import FloatArray
+from aggsim.errors import TimesError
+from aggsim.result import Result
+
+
+class Structure(Protocol):
+    """Gives the outer diameter of aggregates, such as a fractal structure."""
+
+    def collision_diameter(self, volume: FloatArray, /) -> FloatArray:
+        """Outer diameter [m] of particles with this volume of solids [m3]."""
+
+
+class Unit(NamedTuple):
+    """A unit to show values in: `size` in SI, and its name as plain text."""
+
+    size: float
+    name: str
+
+    @property
+    def glyph(self) -> str:
+        """Name with the micro sign, for figures."""
+        return self.name.replace("um", "µm")
+
+
+LENGTHS = (Unit(1e-9, "nm"), Unit(1e-6, "um"), Unit(1e-3, "mm"), Unit(1.0, "m"))
+TIMES = (Unit(1.0, "s"), Unit(60.0, "min"), Unit(3600.0, "h"), Unit(86400.0, "d"))
+
+
+def length_unit(lengths: FloatArray, unit: float | None = None) -> Unit:
+    """The unit asked for [m], or the one in which the middle (in log) of `lengths` [m] reads best."""
+    if unit is not None:
+        size = _checks.scalar("unit", unit, "m", above=0.0, hint="unit=1e-6 for micrometres")
+        for known in LENGTHS:
+            if abs(size - known.size) <= 1e-9 * known.size:
+                return known
+        _checks.refuse(
+            "unit", f"{size:g} m", "1e-9 (nm), 1e-6 (um), 1e-3 (mm) or 1 (m)", "unit=1e-6 for micrometres"
+        )
+    middle = float(np.exp(np.log(lengths).mean()))
+    # 0.5 um is read more easily than 500 nm only beside larger sizes, so a unit starts at 0.6 of itself
+    fitting = [known for known in LENGTHS if middle >= 0.6 * known.size]
+    return fitting[-1] if fitting else LENGTHS[0]
+
+
+def time_unit(time: float) -> Unit:
+    """The unit in which `time` [s] reads best: the largest of which there are at least 2."""
+    fitting = [known for known in TIMES if time >= 2.0 * known.size]
+    return fitting[-1] if fitting else TIMES[0]
+
+
+def time_labels(times: FloatArray) -> list[str]:
+    """Each time with its unit: one unit for all where it suits the shortest too, else the best for each."""
+    common = time_unit(float(times[-1]))
+    positive = times[times > 0.0]
+    one = positive.size == 0 or positive[0] >= 0.1 * common.size
+    units = [common if one or t == 0.0 else time_unit(float(t)) for t in times]
+    return [f"{t / unit.size:.3g} {unit.name}" for t, unit in zip(times, units, strict=True)]
+
+
+def chosen_times(result: Result, times: Any, at_most: int) -> list[int]:
+    """Indices of the output times nearest to `times` [s], or at most so many spread over all of them.
+
+    Raises TimesError for a time before the first or after the last output.
+    """
+    known = result.times
+    if times is None:
+        return sorted(
+            set(np.linspace(0, known.size - 1, min(at_most, known.size)).round().astype(int).tolist())
+        )
+    raw = _checks.plain(times, "s")
+    wanted = _checks.array("times", [raw] if np.ndim(raw) == 0 else raw, "s", error=TimesError)
+    slack = 1e-9 * float(known[-1])
+    outside = (wanted < known[0] - slack) | (wanted > known[-1] + slack)
+    if outside.any():
+        where = int(np.flatnonzero(outside)[0])
+        _checks.refuse(
+            f"times[{where}]",
+            f"{wanted[where]:g} s",
+            f"from the first to the last output time, {known[0]:g} to {known[-1]:g} s",
+            "times in seconds; the output nearest to each is shown",
+            error=TimesError,
+        )
+    return sorted(set(np.abs(known[:, None] - wanted).argmin(axis=0).tolist()))
+
+
+def quantity(r: float) -> float:
+    """Type of quantity r of ISO 9276-1, checked."""
+    return _checks.scalar("r", r, least=0.0, hint="r=0 for number, 2 for surface, 3 for volume")
+
+
+def shown_diameter(volume: FloatArray, sphere: FloatArray, structure: Structure | None) -> FloatArray:
+    """Diameter on the size axis [m]: that of the sphere of equal volume, or the outer one of `structure`."""
+    if structure is None:
+        return sphere
+    outer = np.asarray(structure.collision_diameter(volume), dtype=np.float64)
+    if outer.shape != volume.shape or not (np.diff(outer) > 0.0).all() or not outer[0] > 0.0:
+        _checks.refuse(
+            "structure",
+            repr(structure),
+            "a structure whose outer diameter increases with the volume",
+            "Fractal(particles, dimension=2.1)",
+        )
+    return outer
