@@ -88,7 +88,8 @@ def diameter(name: str, value: Any) -> float:
     if number > LARGEST_DIAMETER:
         raise InputError(
             f"{name}={number:g} m is larger than a particle can be (at most {LARGEST_DIAMETER:g} m); "
-            f"diameters are in metres. Try: {number:g}e-6 if you meant {number:g} um, {number:g}e-9 if you meant {number:g} nm."
+            f"diameters are in metres. Try: {number:g}e-6 if you meant {number:g} um, "
+            f"{number:g}e-9 if you meant {number:g} nm."
         )
     if number < SMALLEST_DIAMETER:
         raise InputError(

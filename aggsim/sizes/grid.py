@@ -71,7 +71,7 @@ class SizeGrid:
         first = _checks.scalar("smallest", smallest, "m3", above=0.0, error=GridError)
         last = _checks.scalar("largest", largest, "m3", above=first, error=GridError)
         density = _checks.scalar("per_doubling", per_doubling, least=0.1, most=100.0, error=GridError)
-        steps = int(np.ceil(np.log2(last / first) * density - 1e-9))
+        steps = int(np.ceil((np.log2(last) - np.log2(first)) * density - 1e-9))
         _refuse_long(steps + 1)
         return cls(first * 2.0 ** (np.arange(steps + 1) / density), ratio=2.0 ** (1.0 / density))
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import copy
+import math
 from collections.abc import Callable
 from dataclasses import dataclass
 from functools import cached_property
@@ -10,7 +11,7 @@ from pathlib import Path
 
 import numpy as np
 from numpy.typing import ArrayLike
-from scipy.interpolate import PchipInterpolator
+from scipy.interpolate import CubicHermiteSpline, CubicSpline
 from scipy.optimize import brentq
 
 from aggsim import _checks
@@ -28,8 +29,9 @@ class Measured(StartingDistribution):
     """A measured distribution: shares of number or of volume in size classes.
 
     Made by `Measured.from_csv` or `Measured.from_classes`. The cumulative distribution of the measured
-    quantity is a monotone cubic through the class limits over ln d [1]: each class holds exactly its share,
-    and the density is continuous and nowhere negative. The other quantity follows from the particle volume.
+    quantity is a cubic spline through the class limits over ln d, made monotone [1]: each class holds exactly
+    its share, and the density is continuous and nowhere negative. The other quantity follows from the particle
+    volume.
 
     `class_limits` (n + 1,), diameters [m]; `class_shares` (n,) of the measured quantity, sum 1; `kind`, that
     quantity, "number" or "volume"; `number`, particles per volume of suspension [1/m3]; `summary`, what was
@@ -37,7 +39,7 @@ class Measured(StartingDistribution):
 
     Raises DistributionError for a table that is not a distribution.
 
-    [1] Fritsch and Carlson (1980), SIAM J. Numer. Anal. 17, 238, doi:10.1137/0717021.
+    [1] Hyman (1983), SIAM J. Sci. Stat. Comput. 4, 645, doi:10.1137/0904045.
     """
 
     class_limits: FloatArray
@@ -177,7 +179,7 @@ class Measured(StartingDistribution):
         summary = (
             f"{used.size} {kind} classes{where} from {limits[used[0]]:.4g} to {limits[used[-1] + 1]:.4g} m; "
             f"the shares added up to {total:.6g}{' %' if percent else ''} and were divided by that; "
-            "density within the classes from a monotone cubic of the cumulative distribution over ln d"
+            "density within the classes from a monotone cubic spline of the cumulative share over ln d"
         )
         single = cls(limits, shares, kind, 1.0, summary)
         amount = amount_as_number(single.moment(1.0), number, volume_fraction, mass_concentration, density)
@@ -208,9 +210,13 @@ class Measured(StartingDistribution):
         return volume_of(self.class_limits[used[0] : used[-1] + 2])
 
     @cached_property
-    def _curve(self) -> PchipInterpolator:
+    def _curve(self) -> CubicHermiteSpline[np.float64]:
+        """Cumulative share over ln d: slopes of a spline, limited to what keeps a cubic monotone [1]."""
+        log = np.log(self.class_limits)
         reached = np.append(0.0, np.cumsum(self.class_shares))
-        return PchipInterpolator(np.log(self.class_limits), reached)
+        rise = self.class_shares / np.diff(log)
+        steepest = 3.0 * np.minimum(np.append(rise[:1], rise), np.append(rise, rise[-1:]))
+        return CubicHermiteSpline(log, reached, np.clip(CubicSpline(log, reached)(log, 1), 0.0, steepest))
 
     @cached_property
     def _power(self) -> int:
@@ -272,13 +278,20 @@ class Measured(StartingDistribution):
 
     def limits(self, share: float = 1e-9) -> tuple[float, float]:
         share = distribution.share(share)
-        low, high = np.log(self._edges[[0, -1]])
-        number, volume = share * self.moment(0.0), (1.0 - share) * self.moment(1.0)
+        return (
+            self._reach(self.number_below, share * self.total_number),
+            self._reach(self.volume_below, (1.0 - share) * self.total_volume),
+        )
 
-        def reach(below: Callable[[float], FloatArray], wanted: float) -> float:
-            return float(np.exp(brentq(lambda u: float(below(np.exp(u))) - wanted, low, high, xtol=1e-12)))
+    def _reach(self, below: Callable[[float], FloatArray], wanted: float) -> float:
+        """Volume [m3] at which a cumulative reaches what is wanted; an edge where round-off decides."""
+        low, high = np.log(self._edges[[0, -1]]).tolist()
 
-        smallest = reach(self.number_below, number)
-        # next to the whole, round-off decides: then the end of the table is the answer
-        beyond = float(self.volume_below(self._edges[-1])) <= volume
-        return smallest, float(self._edges[-1]) if beyond else reach(self.volume_below, volume)
+        def excess(log_volume: float) -> float:
+            return float(below(math.exp(log_volume))) - wanted
+
+        if excess(low) >= 0.0:
+            return float(self._edges[0])
+        if excess(high) <= 0.0:
+            return float(self._edges[-1])
+        return math.exp(brentq(excess, low, high, xtol=1e-12))

@@ -12,6 +12,7 @@ from aggsim.sizes.starting import StartingDistribution
 
 NUMBER_BELOW = 1e-2  # share of the number that may lie below the first pivot (it is kept, see `project`)
 VOLUME_ABOVE = 1e-6  # share of the volume that may lie above the last pivot (likewise)
+_REACH = 8.0  # volume ratio between the two pivots that take up what lies outside
 
 
 def project(start: StartingDistribution, grid: SizeGrid, moments: int = 2) -> FloatArray:
@@ -80,22 +81,35 @@ def _d(volume: float) -> float:
 
 
 def _share(at: FloatArray, mass: FloatArray, x: FloatArray, moments: int) -> FloatArray:
-    """Share point masses among the nearest pivots; outside the grid by the line through the two end pivots."""
+    """Share point masses among the nearest pivots; outside the grid by a line through two pivots (see `_tail`)."""
     nodes = min(moments, x.size)
-    cell = np.clip(np.searchsorted(x, at, side="right") - 1, 0, x.size - 2)
-    first = np.clip(cell - nodes // 2 + 1, 0, x.size - nodes)
-    inside = (at >= x[0]) & (at <= x[-1])
     out = np.zeros(x.size)
-    near = x[first[inside, None] + np.arange(nodes)]
+    inside = (at >= x[0]) & (at <= x[-1])
+    v, m = at[inside], mass[inside]
+    cell = np.clip(np.searchsorted(x, v, side="right") - 1, 0, x.size - 2)
+    first = np.clip(cell - nodes // 2 + 1, 0, x.size - nodes)
+    near = x[first[:, None] + np.arange(nodes)]
     for p in range(nodes):
-        weight = mass[inside].copy()
+        weight = m.copy()
         for q in range(nodes):
             if q != p:
-                weight *= (at[inside] - near[:, q]) / (near[:, p] - near[:, q])
-        out += np.bincount(first[inside] + p, weight, x.size)
-    c, v, m = cell[~inside], at[~inside], mass[~inside]
-    upper = (v - x[c]) / (x[c + 1] - x[c])
-    return out + np.bincount(c, m * (1.0 - upper), x.size) + np.bincount(c + 1, m * upper, x.size)
+                weight *= (v - near[:, q]) / (near[:, p] - near[:, q])
+        out += np.bincount(first + p, weight, x.size)
+    far = min(int(np.searchsorted(x, _REACH * x[0])), x.size - 1)
+    _tail(out, at[at < x[0]], mass[at < x[0]], x, 0, far)
+    far = max(int(np.searchsorted(x, x[-1] / _REACH)) - 1, 0)
+    _tail(out, at[at > x[-1]], mass[at > x[-1]], x, x.size - 1, far)
+    return out
+
+
+def _tail(out: FloatArray, v: FloatArray, m: FloatArray, x: FloatArray, end: int, far: int) -> None:
+    """Put the few particles outside the grid on its end pivot, and what keeps their volume on a far one.
+
+    The far pivot loses a little; a near one could be left with a negative number.
+    """
+    moved = float(m @ (v - x[end])) / (x[far] - x[end])
+    out[far] += moved
+    out[end] += float(m.sum()) - moved
 
 
 def _nearest_positive(wanted: FloatArray, linear: FloatArray, x: FloatArray, moments: int) -> FloatArray:

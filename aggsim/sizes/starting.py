@@ -222,7 +222,7 @@ class _GammaLaw(_Law):
                 "Try: a law without particles of vanishing size, such as LogNormal."
             )
         ratio = float(special.poch(self._shape, k))  # Gamma(a + k) / Gamma(a)
-        return self.number * ratio * float(self.mean_volume / self._shape) ** k
+        return float(self.number * ratio * (self.mean_volume / self._shape) ** k)
 
     def density(self, volume: ArrayLike) -> FloatArray:
         x = np.asarray(volume, dtype=np.float64) * (self._shape / self.mean_volume)

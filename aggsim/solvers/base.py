@@ -17,6 +17,7 @@ from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Protocol
 
+from aggsim import _checks
 from aggsim._checks import FloatArray
 
 Rates = Callable[[float, FloatArray], FloatArray]
@@ -51,6 +52,9 @@ class Method(ABC):
     """
 
     max_evaluations: int = 200_000
+
+    def __post_init__(self) -> None:
+        _checks.count("max_evaluations", self.max_evaluations)
 
     @property
     def name(self) -> str:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import dataclasses
 import math
+from itertools import pairwise
 
 import numpy as np
 import pytest
@@ -120,7 +121,6 @@ def test_quadrature_and_atoms_give_the_moments(law):
     assert (n >= 0).all()
     for k in (0, 1, 2, 3, 4, 5):
         found = np.sum(n * v**k) + sum(number * volume**k for volume, number in law.atoms)
-        # moment 0 of the spread gamma has a tail of v^0.4 below the smallest edge
         assert found == pytest.approx(law.moment(k), rel=2e-13)
 
 
@@ -135,7 +135,8 @@ def test_quadrature_of_a_part_is_the_difference_of_cumulatives(law):
     for below, power in ((law.number_below, 0), (law.volume_below, 1)):
         expected = np.diff(below(edges))
         for volume, number in law.atoms:
-            expected[np.searchsorted(edges, volume) - 1] -= number * volume**power
+            if edges[0] < volume <= edges[-1]:
+                expected[np.searchsorted(edges, volume) - 1] -= number * volume**power
         got = np.bincount(cell, n * v**power, minlength=3)
         # differences of cumulatives lose digits to the totals
         np.testing.assert_allclose(got, expected, atol=1e-12 * float(below(edges[-1])), rtol=1e-11)
@@ -145,14 +146,14 @@ def test_quadrature_of_a_part_is_the_difference_of_cumulatives(law):
 def test_density_is_the_slope_of_the_cumulative(law):
     low, high = law.limits(0.1)
     edges = np.geomspace(low, high, 6)
-    for a, b in zip(edges[:-1], edges[1:], strict=True):
+    for a, b in pairwise(edges):
         inner = [v for v in law.breaks if a < v < b]
         cuts = [a, *inner, b]
         whole = sum(
             integrate.quad(
                 lambda u: float(law.density(np.exp(u)) * np.exp(u)), math.log(p), math.log(q), epsrel=1e-11
             )[0]
-            for p, q in zip(cuts[:-1], cuts[1:], strict=True)
+            for p, q in pairwise(cuts)
         )
         atoms = sum(number for volume, number in law.atoms if a < volume <= b)
         rise = float(law.number_below(b) - law.number_below(a)) - atoms
@@ -222,7 +223,7 @@ def test_sums_add(names, k):
         np.testing.assert_allclose(
             getattr(total, ask)(v), sum(getattr(part, ask)(v) for part in parts), rtol=1e-12, atol=0
         )
-    at, n = total.quadrature(np.geomspace(1e-22, 100.0, 60))
+    at, _ = total.quadrature(np.geomspace(1e-22, 100.0, 60))
     assert at.size == sum(part.quadrature(np.geomspace(1e-22, 100.0, 60))[0].size for part in parts)
     widths = [part.log_width for part in parts if part.log_width > 0]
     assert total.log_width == (min(widths) if widths else 0.0)
@@ -237,56 +238,6 @@ def test_laws_are_frozen_compare_by_value_and_tell_what_they_are():
     with pytest.raises(dataclasses.FrozenInstanceError):
         a.gsd = 2.0
     assert dataclasses.replace(a, number=1e12).number == 1e12
-
-
-# ---- amounts
-
-
-@pytest.mark.parametrize(
-    "law",
-    [
-        lambda **amount: Monodisperse(diameter=400e-9, **amount),
-        lambda **amount: LogNormal(median_diameter=400e-9, gsd=1.4, median_of=3, **amount),
-        lambda **amount: Exponential(mean_diameter=400e-9, **amount),
-        lambda **amount: Gamma(mean_diameter=400e-9, shape=3.0, **amount),
-        lambda **amount: Box(smallest_diameter=1e-7, largest_diameter=4e-7, **amount),
-        lambda **amount: Measured.from_classes(
-            [1e-7, 2e-7, 3e-7, 5e-7], [0.3, 0.5, 0.2], kind="number", **amount
-        ),
-    ],
-)
-def test_every_law_takes_every_way_to_state_the_amount(law):
-    assert law(volume_fraction=2e-4).total_volume == pytest.approx(2e-4, rel=1e-14)
-    assert law(number=3e12).total_number == pytest.approx(3e12, rel=1e-14)
-    # 50 mg/L of polystyrene
-    assert law(mass_concentration=0.05, density=1055.0).total_volume == pytest.approx(
-        0.05 / 1055.0, rel=1e-14
-    )
-    with pytest.raises(InputError, match=r"nothing.*exactly one of number"):
-        law()
-    with pytest.raises(InputError, match="number=1.0 and volume_fraction=0.1"):
-        law(number=1.0, volume_fraction=0.1)
-    with pytest.raises(InputError, match="density=None"):
-        law(mass_concentration=0.05)
-    with pytest.raises(InputError, match="together with mass_concentration"):
-        law(volume_fraction=0.01, density=1055.0)
-    with pytest.raises(InputError, match="1055.0 for 1.055 g/cm3"):
-        law(mass_concentration=0.05, density=1.055)
-    with pytest.raises(InputError, match="1 mg/L is 1e-3"):
-        law(mass_concentration=5000.0, density=1055.0)
-    for phi in (0.0, -1e-3, 0.75, 50.0, math.nan):
-        with pytest.raises(InputError, match="volume_fraction"):
-            law(volume_fraction=phi)
-    with pytest.raises(InputError, match="1 per mL is 1e6 per m3"):
-        law(number=1e23)
-    with pytest.raises(InputError, match="number"):
-        law(number=0.0)
-
-
-def test_sizes_given_as_plain_volumes_are_not_judged():
-    assert Exponential(mean_volume=1.0, number=1.0).total_volume == 1.0
-    assert Monodisperse(volume=1.0, number=1e6).total_volume == 1e6
-    assert Gamma(mean_volume=1.0, shape=2.0, number=1e3).total_number == pytest.approx(1e3, rel=1e-15)
 
 
 # ---- refusals

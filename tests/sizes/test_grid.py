@@ -1,0 +1,104 @@
+from __future__ import annotations
+
+import numpy as np
+import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+
+import aggsim as ag
+from aggsim.errors import GridError
+
+
+def test_geometric_grid_covers_its_span_with_one_ratio() -> None:
+    grid = ag.SizeGrid.geometric(smallest=1e-21, largest=1e-15, per_doubling=3)
+    assert grid.volume[0] == 1e-21
+    assert grid.volume[-2] < 1e-15 <= grid.volume[-1]
+    np.testing.assert_allclose(grid.volume[1:] / grid.volume[:-1], 2 ** (1 / 3), rtol=1e-13)
+    assert grid.is_geometric
+    assert not grid.is_monomers
+
+
+def test_width_and_limits_of_a_geometric_grid() -> None:
+    grid = ag.SizeGrid.geometric(smallest=1.0, largest=64.0, per_doubling=2)
+    np.testing.assert_allclose(grid.width, grid.volume * np.log(2) / 2, rtol=1e-12)
+    np.testing.assert_allclose(grid.limits[1:] / grid.limits[:-1], np.sqrt(2), rtol=1e-12)
+
+
+def test_monomers() -> None:
+    grid = ag.SizeGrid.monomers(2.0, 5)
+    np.testing.assert_array_equal(grid.volume, [2, 4, 6, 8, 10])
+    np.testing.assert_allclose(grid.width, 2.0, rtol=1e-12)
+    assert grid.is_monomers
+
+
+def test_monomers_then_geometric_changes_over_where_the_spacing_reaches_one_monomer() -> None:
+    grid = ag.SizeGrid.monomers_then_geometric(1.0, 100.0, per_doubling=3)
+    np.testing.assert_array_equal(grid.volume[:4], [1, 2, 3, 4])
+    steps = np.diff(grid.volume)
+    assert (steps >= 1.0 - 1e-12).all()
+    assert grid.volume[-1] >= 100.0
+    assert (np.diff(steps) > -1e-9).all()
+
+
+def test_diameter_is_that_of_the_sphere_of_equal_volume() -> None:
+    grid = ag.SizeGrid.from_pivots(np.pi / 6 * np.array([1e-6, 2e-6]) ** 3)
+    np.testing.assert_allclose(grid.diameter, [1e-6, 2e-6], rtol=1e-14)
+
+
+@pytest.mark.parametrize(
+    "grid",
+    [
+        ag.SizeGrid.geometric(smallest=1.0, largest=10.0, per_doubling=4),
+        ag.SizeGrid.monomers(1.0, 10),
+        ag.SizeGrid.monomers_then_geometric(1.0, 20.0, per_doubling=2),
+        ag.SizeGrid.from_pivots([1.0, 2.0, 5.0]),
+    ],
+    ids=["geometric", "monomers", "monomers then geometric", "given"],
+)
+def test_extension_keeps_the_pivots_and_the_rule(grid: ag.SizeGrid) -> None:
+    longer = grid.extended(100.0)
+    np.testing.assert_array_equal(longer.volume[: len(grid)], grid.volume)
+    assert longer.volume[-1] >= 100.0 * (1 - 1e-12)
+    assert grid.extended(grid.volume[-1]) is grid
+    if grid.is_geometric:
+        assert longer.is_geometric
+    if grid.is_monomers:
+        assert longer.is_monomers
+
+
+@given(st.floats(1e-27, 1e-3), st.floats(1.5, 1e9), st.floats(0.5, 12.0), st.floats(1.0, 1e6))
+def test_any_geometric_grid_is_increasing_and_extends(
+    smallest: float, span: float, density: float, more: float
+) -> None:
+    grid = ag.SizeGrid.geometric(smallest=smallest, largest=smallest * span, per_doubling=density)
+    longer = grid.extended(smallest * span * more)
+    assert (np.diff(longer.volume) > 0).all()
+    assert longer.volume[-1] >= smallest * span * more * (1 - 1e-9)
+
+
+def test_grids_are_equal_by_value_and_cannot_be_written_to() -> None:
+    a, b = ag.SizeGrid.monomers(1.0, 5), ag.SizeGrid.from_pivots([1.0, 2.0, 3.0, 4.0, 5.0])
+    assert a == b
+    assert hash(a) == hash(b)
+    with pytest.raises(ValueError, match="read-only"):
+        a.volume[0] = 2.0
+
+
+@pytest.mark.parametrize(
+    ("make", "words"),
+    [
+        (lambda: ag.SizeGrid.geometric(smallest=-1.0, largest=1.0), "smallest=-1"),
+        (lambda: ag.SizeGrid.geometric(smallest=2.0, largest=1.0), "largest=1"),
+        (lambda: ag.SizeGrid.geometric(smallest=float("nan"), largest=1.0), "smallest=nan"),
+        (lambda: ag.SizeGrid.geometric(smallest=1e-20, largest=1e20, per_doubling=0.0), "per_doubling=0"),
+        (lambda: ag.SizeGrid.from_pivots([1.0, 3.0, 2.0]), r"volume\[2\]=2 after 3"),
+        (lambda: ag.SizeGrid.from_pivots([]), "empty"),
+        (lambda: ag.SizeGrid.from_pivots([1.0]), "at least 2"),
+        (lambda: ag.SizeGrid.from_pivots([[1.0, 2.0]]), r"shape \(1, 2\)"),
+        (lambda: ag.SizeGrid.from_pivots([1.0, np.inf]), r"volume\[1\]=inf"),
+        (lambda: ag.SizeGrid.geometric(smallest=1e-300, largest=1e300, per_doubling=50), "at most 20000"),
+    ],
+)
+def test_malformed_grids_are_refused(make, words: str) -> None:  # type: ignore[no-untyped-def]
+    with pytest.raises(GridError, match=words):
+        make()

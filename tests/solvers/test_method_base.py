@@ -1,0 +1,46 @@
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+import pytest
+
+import aggsim as ag
+from aggsim.solvers.base import Method
+
+
+class EulerStepper:
+    """Explicit Euler with a fixed number of steps: the shortest stepper there is."""
+
+    def __init__(self, rates, start, state, stop) -> None:  # type: ignore[no-untyped-def]
+        self._rates, self.time, self.state, self._stop = rates, start, state, stop
+        self._size = (stop - start) / 2000
+
+    def step(self) -> str | None:
+        self._before = (self.time, self.state)
+        end = min(self.time + self._size, self._stop)
+        self.state = self.state + (end - self.time) * self._rates(self.time, self.state)
+        self.time = self._stop if self._stop - end < 1e-9 * self._stop else end
+        return None
+
+    def at(self, times: np.ndarray) -> np.ndarray:
+        (t0, y0), (t1, y1) = self._before, (self.time, self.state)
+        share = ((times - t0) / (t1 - t0))[:, None]
+        return (1 - share) * y0 + share * y1
+
+
+@dataclass(frozen=True, kw_only=True)
+class Euler(Method):
+    """A method of a user's own."""
+
+    def stepper(self, rates, jacobian, start, state, stop, rtol, atol):  # type: ignore[no-untyped-def]
+        return EulerStepper(rates, start, state, stop)
+
+
+def test_a_method_of_ones_own_is_one_small_class() -> None:
+    start = ag.Monodisperse(volume=1.0, number=1.0)
+    grid = ag.SizeGrid.monomers_then_geometric(1.0, 1e3)
+    result = ag.simulate(ag.Batch(ag.kernels.constant(1.0)), start, [1.0, 2.0], grid=grid, method=Euler())
+    np.testing.assert_allclose(result.total_number(), [2 / 3, 0.5], rtol=1e-3)
+    assert result.settings["method"] == "Euler"
+    assert result.balance.closure == pytest.approx([0.0, 0.0], abs=1e-12)
