@@ -14,6 +14,7 @@ from __future__ import annotations
 
 from abc import ABC, abstractmethod
 from collections.abc import Callable
+from contextlib import AbstractContextManager, nullcontext
 from dataclasses import dataclass
 from typing import Protocol
 
@@ -60,6 +61,10 @@ class Method(ABC):
     def name(self) -> str:
         """Name for reports."""
         return type(self).__name__
+
+    def session(self) -> AbstractContextManager[None]:
+        """Surroundings of a whole run, such as warnings that the method needs to see."""
+        return nullcontext()
 
     @abstractmethod
     def stepper(

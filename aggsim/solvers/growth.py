@@ -9,13 +9,11 @@ import numpy as np
 from aggsim._checks import FloatArray
 from aggsim.sizes import SizeGrid
 
-# Share of the volume in the uppermost sections at which a grid of our own choice is extended. Less would follow
+# Share of the volume in the uppermost sections at which more sections are taken into use. Less would follow
 # particles too few to matter: where the largest ones sweep up the small faster than they grow (settling), a
 # smaller share brings the numerical gelation forward by chasing a tail of round-off size.
 TOP_SHARE = 1e-7
 BEYOND_SHARE = 1e-3  # share of the volume past the top at which a run that cannot be extended is judged
-EXTENSION = 5.0  # doublings of volume that one extension adds
-LARGEST_AUTOMATIC_GRID = 400  # sections
 REMAINING = 1e-3  # a run stops when gelation is nearer than this share of the time that led to it
 STEEPEST = -0.05  # slope of the growth time against time below which it runs into zero
 

@@ -2,23 +2,18 @@
 
 from __future__ import annotations
 
+from bisect import bisect_right
 from dataclasses import dataclass, field
 
 import numpy as np
 
 from aggsim._checks import FloatArray
-from aggsim.errors import GridError
 from aggsim.result import Outcome, Status
 from aggsim.schemes import Scheme
 from aggsim.sizes import SizeGrid
 from aggsim.solvers.base import Method, Stepper
-from aggsim.solvers.growth import (
-    BEYOND_SHARE,
-    EXTENSION,
-    LARGEST_AUTOMATIC_GRID,
-    TOP_SHARE,
-    GrowthWatch,
-)
+from aggsim.solvers.growth import BEYOND_SHARE, TOP_SHARE, GrowthWatch
+from aggsim.solvers.ladder import Ladder
 from aggsim.solvers.progress import Progress
 from aggsim.solvers.system import NotFiniteError, System
 from aggsim.vessels import Vessel
@@ -33,11 +28,10 @@ class Run:
     vessel: Vessel
     scheme: Scheme
     method: Method
-    grid: SizeGrid
+    ladder: Ladder
     start: FloatArray
     outputs: FloatArray
     rtol: float
-    automatic: bool
     progress: Progress
     steps: int = 0
     restarts: int = -1  # the first start is no restart
@@ -47,26 +41,28 @@ class Run:
     _rows: list[tuple[float, FloatArray]] = field(default_factory=list)
 
     def __post_init__(self) -> None:
-        self.initial_volume = float(self.start @ self.grid.volume)
-        self._initial_number = float(self.start.sum())
+        grid, number = self.ladder.first(self.start)
+        self.initial_volume = float(number @ grid.volume)
+        self._initial_number = float(number.sum())
         self._time = 0.0
-        self._state = np.concatenate([self.start, [0.0, 0.0]])
+        self._state = np.concatenate([number, [0.0, 0.0]])
         self._watch = GrowthWatch(self.initial_volume)
-        self._use(self.grid)
+        self._use(grid)
 
     def execute(self) -> Status:
         """Integrate to the last output time, or to the reason why that is not possible."""
         end = float(self.outputs[-1])
         if self.outputs[0] == 0.0:
-            self._rows.append((0.0, self._state.copy()))
+            self._rows.append((0.0, np.concatenate([self.start, [0.0, 0.0]])))
         jumps = [t for t in self._system.jumps if 0.0 < t < end]
         status = None
         try:
-            for stop in [*jumps, end] if end > 0.0 else []:
-                self._watch.begin(self._time)
-                status = self._segment(self._time, stop)
-                if status is not None:
-                    break
+            with self.method.session():
+                for stop in [*jumps, end] if end > 0.0 else []:
+                    self._watch.begin(self._time)
+                    status = self._segment(self._time, stop)
+                    if status is not None:
+                        break
         except KeyboardInterrupt:
             status = Status(Outcome.INTERRUPTED, self._time)
         except NotFiniteError as error:
@@ -87,25 +83,26 @@ class Run:
         """Jacobian evaluations on all grids so far."""
         return self._spent[1] + self._system.jacobian_evaluations
 
+    @property
+    def grid(self) -> SizeGrid:
+        """Grid of the result."""
+        return self.ladder.result_grid(self._grid)
+
     def times(self) -> FloatArray:
         """Times of the recorded states (n_times,) [s]."""
         return np.array([t for t, _ in self._rows])
 
     def states(self) -> FloatArray:
-        """Recorded states (n_times, n_sections + 2) on the final grid."""
-        return np.array([self._padded(state) for _, state in self._rows])
+        """Recorded states (n_times, n_sections + 2) on the grid of the result."""
+        return np.array([_padded(state, self.grid) for _, state in self._rows])
 
     def _use(self, grid: SizeGrid) -> None:
-        self.grid = grid
+        self._grid = grid
         self._system = System(self.vessel, self.scheme, grid)
         self._watch.on(grid)
         scale = np.minimum(self._initial_number, self.initial_volume / grid.volume)
         beyond = [self._initial_number, self.initial_volume]
         self._atol = self.rtol * ATOL * np.concatenate([scale, beyond])
-
-    def _padded(self, state: FloatArray) -> FloatArray:
-        missing = self.grid.sections + 2 - state.size
-        return np.concatenate([state[:-2], np.zeros(missing), state[-2:]]) if missing else state
 
     def _begin(self, start: float, stop: float) -> Stepper:
         self.restarts += 1
@@ -123,7 +120,8 @@ class Run:
     def _segment(self, start: float, stop: float) -> Status | None:
         """Integrate over one stretch without jumps; None when its end is reached."""
         stepper = self._begin(start, stop)
-        next_output = int(np.searchsorted(self.outputs, self._time, side="right"))
+        outputs = self.outputs.tolist()
+        next_output = bisect_right(outputs, self._time)
         while self._time < stop:
             failure = stepper.step()
             if failure is not None:
@@ -131,13 +129,13 @@ class Run:
             self.steps += 1
             state = stepper.state
             share, doubled = self._watch.look(state)
-            if self.automatic and share > TOP_SHARE and self._extend():
+            if share > TOP_SHARE and self._climb():
                 # the step is taken again from the last state, so that nothing has passed the top
                 stepper = self._begin(start, stop)
                 continue
             reached = stepper.time
-            after = int(np.searchsorted(self.outputs, reached, side="right"))
-            if after > next_output:
+            if next_output < len(outputs) and outputs[next_output] <= reached:
+                after = bisect_right(outputs, reached)
                 inside = self.outputs[next_output:after]
                 self._rows += list(zip(inside.tolist(), stepper.at(inside), strict=True))
                 next_output = after
@@ -152,21 +150,17 @@ class Run:
             if self.rate_evaluations > self.method.max_evaluations:
                 detail = f"max_evaluations={self.method.max_evaluations}; try a larger one, or a looser rtol."
                 return Status(Outcome.WORK_LIMIT, self._time, detail)
-            self.progress.update(reached / float(self.outputs[-1]), reached)
+            self.progress.update(reached / outputs[-1], reached)
         return None
 
-    def _extend(self) -> bool:
-        """Continue the grid upward; False where it may not grow any more."""
-        try:
-            grid = self.grid.extended(self.grid.volume[-1] * 2.0**EXTENSION)
-            self.scheme.check(grid)
-        except GridError:
-            return False
-        if grid.sections > LARGEST_AUTOMATIC_GRID:
+    def _climb(self) -> bool:
+        """Take more sections into use; False where there are no more."""
+        grid = self.ladder.next(self._grid)
+        if grid is None:
             return False
         self._spent = (self.rate_evaluations, self.jacobian_evaluations)
         self._use(grid)
-        self._state = self._padded(self._state)
+        self._state = _padded(self._state, grid)
         self.extensions += 1
         return True
 
@@ -177,7 +171,7 @@ class Run:
             gelled = self._gelled()
             if gelled is not None:
                 return gelled
-        if share > BEYOND_SHARE and self.automatic:
+        if share > BEYOND_SHARE and self.ladder.automatic:
             detail = (
                 f"{self.grid.sections} sections reach {self.grid.volume[-1]:.3g} m3. Try: fewer sections per "
                 "doubling on a grid of your own, or shorter times."
@@ -194,3 +188,9 @@ class Run:
             "volume to particles without limit of size; a sink (settling out, breakage) or a shorter time helps."
         )
         return Status(Outcome.GELATION, self._time, detail, gelation_time=expected)
+
+
+def _padded(state: FloatArray, grid: SizeGrid) -> FloatArray:
+    """A state on a lower part of `grid`, with zeros in the sections above."""
+    missing = grid.sections + 2 - state.size
+    return np.concatenate([state[:-2], np.zeros(missing), state[-2:]]) if missing else state

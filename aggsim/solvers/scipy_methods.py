@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 import warnings
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
 from dataclasses import dataclass
 from typing import Any
 
@@ -30,12 +31,11 @@ class ScipyStepper:
         return state
 
     def step(self) -> str | None:
-        with warnings.catch_warnings(record=True) as caught:  # LSODA gives its reasons as warnings
-            warnings.simplefilter("always")
-            message = self._solver.step()
-        if self._solver.status == "failed":
-            return "; ".join([str(w.message) for w in caught] + [str(message)])
-        return None
+        try:
+            message: str | None = self._solver.step()
+        except UserWarning as reason:  # see `ScipyMethod.session`
+            return str(reason)
+        return message if self._solver.status == "failed" else None
 
     def at(self, times: FloatArray) -> FloatArray:
         states: FloatArray = self._solver.dense_output()(times).T
@@ -45,6 +45,13 @@ class ScipyStepper:
 @dataclass(frozen=True, kw_only=True)
 class ScipyMethod(Method):
     """Base of the methods that scipy provides."""
+
+    @contextmanager
+    def session(self) -> Iterator[None]:
+        # LSODA gives the reason of a failure as a warning; as an exception it reaches `step`
+        with warnings.catch_warnings():
+            warnings.filterwarnings("error", message="lsoda", category=UserWarning)
+            yield
 
     def _solver(self) -> Callable[..., Any]:
         return getattr(integrate, self.name)  # type: ignore[no-any-return]

@@ -15,6 +15,7 @@ from aggsim.result import Balance, Contributions, Outcome, Result, RunStatistics
 from aggsim.schemes import FixedPivot, Scheme
 from aggsim.sizes import SizeGrid, StartingDistribution
 from aggsim.solvers.growth import BEYOND_SHARE
+from aggsim.solvers.ladder import Ladder
 from aggsim.solvers.methods import LSODA, Method
 from aggsim.solvers.progress import progress_for
 from aggsim.solvers.run import Run
@@ -52,7 +53,8 @@ def simulate(
     grid : SizeGrid, optional
         Pivots. Without it a grid is chosen from `start`, and continued upward as soon as 1e-7 of the volume
         reaches its uppermost sections, before it passes the top. On a grid that is given, what passes
-        the top is counted in `result.balance`.
+        the top is counted in `result.balance`; sections far above the particles are taken into use in the same
+        way, when they are needed.
     scheme : Scheme, optional
         Discretisation in size, `FixedPivot(moments=6)` without it.
     method : Method, optional
@@ -112,7 +114,7 @@ def simulate(
     number = scheme.project(start, grid)
 
     shown = progress_for(progress)
-    run = Run(vessel, scheme, method, grid, number, outputs, rtol, automatic, shown)
+    run = Run(vessel, scheme, method, Ladder(scheme, grid, automatic), number, outputs, rtol, shown)
     try:
         status = run.execute()
     finally:
@@ -125,7 +127,8 @@ def simulate(
             "simulate(..., raise_unfinished=False) returns it instead.",
             result,
         )
-    _warn(result, automatic)
+    if status.completed:
+        _warn(result, automatic)
     return result
 
 

@@ -1,0 +1,75 @@
+"""Which sections take part in the integration: those that the particles have reached, and some room above.
+
+Empty sections far above the largest particle make a system stiff for nothing, and where large particles sweep
+up small ones, numbers of round-off size in them run away. So a run begins on the lower part of its grid and
+climbs when particles come near the top.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+
+from aggsim._checks import FloatArray
+from aggsim.errors import GridError
+from aggsim.schemes import Scheme
+from aggsim.sizes import SizeGrid
+
+ROOM = 4.0  # doublings of volume above the largest particle at the start
+CLIMB = 5.0  # doublings of volume that one climb adds
+UNSEEN = 1e-12  # share of the volume at the start that may wait in the uppermost section in use
+LARGEST_AUTOMATIC_GRID = 400  # sections
+
+
+class Ladder:
+    """The grids of one run, each a lower part of the next."""
+
+    def __init__(self, scheme: Scheme, grid: SizeGrid, automatic: bool) -> None:
+        """Climb `grid` to its top and, where `automatic`, continue it beyond by its own rule."""
+        self._scheme = scheme
+        self._whole = grid
+        self._automatic = automatic
+
+    @property
+    def automatic(self) -> bool:
+        """True where the grid may be continued past its top."""
+        return self._automatic
+
+    def first(self, number: FloatArray) -> tuple[SizeGrid, FloatArray]:
+        """Grid to begin with, and the starting numbers on it."""
+        x = self._whole.volume
+        above = np.cumsum((number * x)[::-1])[::-1]
+        used = int(np.flatnonzero(above > UNSEEN * above[0])[-1])
+        grid = self._part(2.0**ROOM * float(x[used]))
+        kept = number[: grid.sections].copy()
+        kept[-1] += float(number[grid.sections :] @ x[grid.sections :]) / float(grid.volume[-1])
+        return grid, kept
+
+    def next(self, grid: SizeGrid) -> SizeGrid | None:
+        """The next longer grid, None where there is none."""
+        top = float(grid.volume[-1]) * 2.0**CLIMB
+        if grid.sections < self._whole.sections:
+            return self._part(top)
+        if not self._automatic:
+            return None
+        try:
+            longer = grid.extended(top)
+            self._scheme.check(longer)
+        except GridError:
+            return None
+        return longer if longer.sections <= LARGEST_AUTOMATIC_GRID else None
+
+    def result_grid(self, grid: SizeGrid) -> SizeGrid:
+        """Grid of the result of a run that ended on `grid`."""
+        return grid if grid.sections > self._whole.sections else self._whole
+
+    def _part(self, top: float) -> SizeGrid:
+        whole = self._whole
+        count = int(np.searchsorted(whole.volume, top * (1.0 - 1e-9))) + 1
+        if count >= whole.sections:
+            return whole
+        part = SizeGrid(whole.volume[:count], ratio=whole.ratio, monomer=whole.monomer)
+        try:
+            self._scheme.check(part)
+        except GridError:
+            return whole
+        return part
