@@ -11,6 +11,10 @@ from aggsim.inputs import Flow as Flow
 from aggsim.inputs import Fractal as Fractal
 from aggsim.inputs import Medium as Medium
 from aggsim.inputs import Particles as Particles
+from aggsim.outputs import figures as figures
+from aggsim.outputs import load as load
+from aggsim.outputs import save as save
+from aggsim.outputs import tables as tables
 from aggsim.result import Outcome as Outcome
 from aggsim.result import Result as Result
 from aggsim.schemes import FixedPivot as FixedPivot

@@ -10,15 +10,14 @@ from typing import Any
 
 import numpy as np
 
+from aggsim import _checks
 from aggsim._checks import FloatArray
-from aggsim.outputs._units import Unit, time_unit
+from aggsim.outputs._units import LENGTHS, TIMES, Unit, length_unit, log_like, time_unit
 
 # Okabe and Ito (2008), Color Universal Design, in an order that keeps neighbours apart; the pale one is last
 COLOURS = ("#0072B2", "#D55E00", "#009E73", "#CC79A7", "#E69F00", "#56B4E9", "#000000", "#F0E442")
+FEW = 12  # output times up to which curves over time show markers
 LINES = ("-", "--", "-.", (0, (1, 1.2)), (0, (6, 1.5, 1, 1.5, 1, 1.5)))
-GREY = "0.35"
-
-_LOG_LIKE = 0.2  # output times with a median below this share of the last are spaced as logarithms
 
 
 def axis(ax: Any, *, size: tuple[float, float] = (6.4, 4.0)) -> tuple[Any, bool]:
@@ -44,9 +43,9 @@ def sequence(count: int) -> list[Any]:
     return list(mpl.colormaps["viridis"](np.linspace(0.0, 0.86, count) if count > 1 else [0.35]))
 
 
-def legend(ax: Any, own: bool, title: str | None = None) -> None:
+def legend(ax: Any, own: bool) -> None:
     """Legend beside the axis where the figure is ours, else where it hides least of the data."""
-    look: dict[str, Any] = {"frameon": False, "fontsize": "small", "title_fontsize": "small", "title": title}
+    look: dict[str, Any] = {"frameon": False, "fontsize": "small"}
     if own:
         ax.legend(loc="center left", bbox_to_anchor=(1.01, 0.5), borderaxespad=0.0, **look)
     else:
@@ -63,10 +62,11 @@ def legend_above(ax: Any, handles: list[Any] | None = None, columns: int = 3) ->
 
 def log_size(axis_part: Any, low: float, high: float) -> None:
     """Ticks of a logarithmic size axis (`ax.xaxis` or `ax.yaxis`) from `low` to `high`, as plain numbers."""
-    from matplotlib.ticker import FixedLocator, FuncFormatter, LogLocator, MaxNLocator, NullFormatter
+    from matplotlib.ticker import FuncFormatter, LogLocator, MaxNLocator, NullFormatter, NullLocator
 
     decades = math.log10(high / low)
-    minor = LogLocator(subs=tuple(range(2, 10)), numticks=100)
+    major: Any
+    minor: Any = LogLocator(subs=tuple(range(2, 10)), numticks=100)
     if decades > 3.0:
         major = LogLocator(numticks=100)
     elif decades > 1.2:
@@ -75,18 +75,28 @@ def log_size(axis_part: Any, low: float, high: float) -> None:
         major = LogLocator(subs=(1, 1.5, 2, 3, 4, 5, 7), numticks=100)
     else:
         major = MaxNLocator(6, steps=[1, 2, 2.5, 5, 10])
-        minor = FixedLocator([])
+        minor = NullLocator()
     axis_part.set_major_locator(major)
     axis_part.set_minor_locator(minor)
     axis_part.set_major_formatter(FuncFormatter(lambda value, _: f"{value:.6g}"))
     axis_part.set_minor_formatter(NullFormatter())
 
 
-def widen(ax: Any, had_data: bool, low: float, high: float) -> tuple[float, float]:
-    """Limits of the size axis that take in `low` to `high` and what was drawn before."""
-    if had_data:
-        before = ax.get_xlim()
-        low, high = min(low, before[0]), max(high, before[1])
+def size_unit(axis_part: Any, lengths: FloatArray, unit: float | None) -> Unit:
+    """Unit of a size axis: that of what was drawn on it before, else the one asked for, else a fitting one."""
+    drawn = _drawn_unit(axis_part, LENGTHS)
+    if drawn is None:
+        return length_unit(lengths, unit)
+    if unit is not None and length_unit(lengths, unit) != drawn:
+        _checks.refuse("unit", f"{unit:g} m", f"the unit of what is on the axis already, {drawn.size:g} m")
+    return drawn
+
+
+def widen(axis_part: Any, low: float, high: float) -> tuple[float, float]:
+    """Limits of a size axis that take in `low` to `high` and what was drawn before."""
+    if axis_part.axes.has_data():
+        before = axis_part.get_view_interval()
+        low, high = min(low, float(before[0])), max(high, float(before[1]))
     return low, high
 
 
@@ -96,10 +106,19 @@ def time_axis(ax: Any, times: FloatArray) -> Unit:
     Outputs that are spaced as logarithms get a logarithmic axis; a start at t = 0 is kept on it by a linear
     stretch up to the first output after it.
     """
+    drawn = _drawn_unit(ax.xaxis, TIMES) if ax.has_data() else None
+    if drawn is not None:
+        left, right = ax.get_xlim()
+        ax.set_xlim(min(left, float(times[0]) / drawn.size), max(right, float(times[-1]) / drawn.size))
+        return drawn
     positive = times[times > 0.0]
-    if positive.size < 3 or float(np.median(positive)) > _LOG_LIKE * float(positive[-1]):
+    if not log_like(times):
         unit = time_unit(float(times[-1]))
-        ax.set_xlim(float(times[0]) / unit.size, float(times[-1]) / unit.size or 1.0)
+        first, last = float(times[0]) / unit.size, float(times[-1]) / unit.size
+        if last == first:
+            first, last = 0.0, 2.0 * last or 1.0
+        margin = 0.02 * (last - first) if times.size <= FEW else 0.0
+        ax.set_xlim(first - margin, last + margin)
     else:
         unit = time_unit(float(np.median(positive)))
         first, last = float(positive[0]) / unit.size, float(times[-1]) / unit.size
@@ -112,6 +131,12 @@ def time_axis(ax: Any, times: FloatArray) -> Unit:
             ax.set_xlim(first, last)
     ax.set_xlabel(f"time [{unit.glyph}]")
     return unit
+
+
+def _drawn_unit(axis_part: Any, units: tuple[Unit, ...]) -> Unit | None:
+    """The unit in the label of an axis on which one of these figures was drawn before."""
+    label = axis_part.get_label_text()
+    return next((unit for unit in units if label.endswith(f"[{unit.glyph}]")), None)
 
 
 def _thin_decades(ax: Any, first: float, last: float) -> None:

@@ -32,11 +32,12 @@ class Unit(NamedTuple):
 
 
 LENGTHS = (Unit(1e-9, "nm"), Unit(1e-6, "um"), Unit(1e-3, "mm"), Unit(1.0, "m"))
+_LOG_LIKE = 0.2  # a median of the times below this share of the last tells a logarithmic spacing
 TIMES = (Unit(1.0, "s"), Unit(60.0, "min"), Unit(3600.0, "h"), Unit(86400.0, "d"))
 
 
 def length_unit(lengths: FloatArray, unit: float | None = None) -> Unit:
-    """The unit asked for [m], or the one in which the middle (in log) of `lengths` [m] reads best."""
+    """The unit asked for [m], or the one in which the middle (in log) of their range reads best."""
     if unit is not None:
         size = _checks.scalar("unit", unit, "m", above=0.0, hint="unit=1e-6 for micrometres")
         for known in LENGTHS:
@@ -45,7 +46,7 @@ def length_unit(lengths: FloatArray, unit: float | None = None) -> Unit:
         _checks.refuse(
             "unit", f"{size:g} m", "1e-9 (nm), 1e-6 (um), 1e-3 (mm) or 1 (m)", "unit=1e-6 for micrometres"
         )
-    middle = float(np.exp(np.log(lengths).mean()))
+    middle = float(np.sqrt(lengths.min() * lengths.max()))
     # 0.5 um is read more easily than 500 nm only beside larger sizes, so a unit starts at 0.6 of itself
     fitting = [known for known in LENGTHS if middle >= 0.6 * known.size]
     return fitting[-1] if fitting else LENGTHS[0]
@@ -57,25 +58,42 @@ def time_unit(time: float) -> Unit:
     return fitting[-1] if fitting else TIMES[0]
 
 
+def table_time_unit(times: FloatArray) -> Unit:
+    """The unit of a column of increasing times [s], which suits the middle one."""
+    return time_unit(float(times[times.size // 2]))
+
+
 def time_labels(times: FloatArray) -> list[str]:
     """Each time with its unit: one unit for all where it suits the shortest too, else the best for each."""
     common = time_unit(float(times[-1]))
     positive = times[times > 0.0]
     one = positive.size == 0 or positive[0] >= 0.1 * common.size
-    units = [common if one or t == 0.0 else time_unit(float(t)) for t in times]
+    units = [common if one else time_unit(float(t)) for t in times]
     return [f"{t / unit.size:.3g} {unit.name}" for t, unit in zip(times, units, strict=True)]
 
 
+def log_like(times: FloatArray) -> bool:
+    """True where output times [s] are spaced rather as their logarithms than as themselves."""
+    positive = times[times > 0.0]
+    return positive.size >= 3 and float(np.median(positive)) < _LOG_LIKE * float(positive[-1])
+
+
+def evenly(count: int, at_most: int) -> list[int]:
+    """At most so many of `count` indices with the first and the last, at one stride if half as many allow it."""
+    for kept in range(min(at_most, count), at_most // 2, -1):
+        if kept > 1 and (count - 1) % (kept - 1) == 0:
+            return list(range(0, count, (count - 1) // (kept - 1)))
+    return sorted(set(np.linspace(0, count - 1, min(at_most, count)).round().astype(int).tolist()))
+
+
 def chosen_times(result: Result, times: Any, at_most: int) -> list[int]:
-    """Indices of the output times nearest to `times` [s], or at most so many spread over all of them.
+    """Indices of the output times nearest to `times` [s], or at most so many spread over the run.
 
     Raises TimesError for a time before the first or after the last output.
     """
     known = result.times
     if times is None:
-        return sorted(
-            set(np.linspace(0, known.size - 1, min(at_most, known.size)).round().astype(int).tolist())
-        )
+        return evenly(known.size, at_most)
     raw = _checks.plain(times, "s")
     wanted = _checks.array("times", [raw] if np.ndim(raw) == 0 else raw, "s", error=TimesError)
     slack = 1e-9 * float(known[-1])

@@ -56,7 +56,7 @@ class RunStatistics:
     Attributes
     ----------
     rate_evaluations, jacobian_evaluations, steps : int
-        Counts over the whole run.
+        Counts over the whole run; a step of LSODA is a stride that holds a few steps inside.
     restarts : int
         Times the method was started anew, at a jump in time or for a longer grid.
     grid_extensions : int

@@ -5,10 +5,11 @@ an edit in another file.
 
 The rate of change of section p is a quadratic form that is stored as segments,
 
-    rate[p] = sum over segments s of p:  n[big[s]] * dot(coefficient[start[s]:...], n[low[s]:high[s]])
+    rate[p] = sum over segments s of p:  n[big] * dot(coefficient[start:stop], n[low:low + stop - start])
 
-A pair (i, j), j <= i, is met by the segments with big = i, so that births next to i and the losses of i run
-over long contiguous stretches of j. Rows n and n + 1 count the number and the volume that pass the top.
+with one row (big, low, start) of the table `segments` for each; `start` of the next row is the `stop` of this
+one. A pair (i, j), j <= i, is met by the segments with big = i, so that births next to i and the losses of i
+run over long contiguous stretches of j. Sections n and n + 1 count the number and the volume that pass the top.
 """
 
 from __future__ import annotations
@@ -77,7 +78,7 @@ def interpolation_births(x, n, order):  # type: ignore[no-untyped-def]
 
 @compiled
 def layout(first, count, n):  # type: ignore[no-untyped-def]
-    """Segments (row_start, big, low, high, start) that hold every birth and loss of the given table."""
+    """Segments that hold every birth and loss of the given table, and the first segment of each section."""
     low = np.full((n + 2, n), n, np.int64)
     high = np.zeros((n + 2, n), np.int64)
     for i in range(n):
@@ -92,37 +93,32 @@ def layout(first, count, n):  # type: ignore[no-untyped-def]
                 for p in range(n, n + 2):
                     low[p, i] = min(low[p, i], j)
                     high[p, i] = max(high[p, i], j + 1)
-    row_start = np.zeros(n + 3, np.int64)
+    section = np.zeros(n + 3, np.int64)
     for p in range(n + 2):
-        filled = 0
+        section[p + 1] = section[p]
         for i in range(n):
             if high[p, i] > low[p, i]:
-                filled += 1
-        row_start[p + 1] = row_start[p] + filled
-    total = row_start[n + 2]
-    big = np.empty(total, np.int64)
-    seg_low = np.empty(total, np.int64)
-    seg_high = np.empty(total, np.int64)
-    start = np.zeros(total + 1, np.int64)
+                section[p + 1] += 1
+    segments = np.zeros((section[n + 2] + 1, 3), np.int64)
     s = 0
     for p in range(n + 2):
         for i in range(n):
             if high[p, i] > low[p, i]:
-                big[s], seg_low[s], seg_high[s] = i, low[p, i], high[p, i]
-                start[s + 1] = start[s] + high[p, i] - low[p, i]
+                segments[s, 0], segments[s, 1] = i, low[p, i]
+                segments[s + 1, 2] = segments[s, 2] + high[p, i] - low[p, i]
                 s += 1
-    return row_start, big, seg_low, seg_high, start
+    return segments, section
 
 
 @compiled
-def fill(first, count, weight, row_start, big, low, start, x, kernel):  # type: ignore[no-untyped-def]
+def fill(first, count, weight, segments, section, x, kernel):  # type: ignore[no-untyped-def]
     """Coefficients of the segments for one symmetric kernel matrix (n, n); `x` is continued past the top."""
     n = kernel.shape[0]
     where = np.full((n + 2, n), -1, np.int64)
     for p in range(n + 2):
-        for s in range(row_start[p], row_start[p + 1]):
-            where[p, big[s]] = start[s] - low[s]
-    out = np.zeros(start[-1])
+        for s in range(section[p], section[p + 1]):
+            where[p, segments[s, 0]] = segments[s, 2] - segments[s, 1]
+    out = np.zeros(segments[-1, 2])
     for i in range(n):
         for j in range(i + 1, n):  # i as the smaller partner
             out[where[i, i] + j] -= kernel[i, j]
@@ -145,37 +141,39 @@ def fill(first, count, weight, row_start, big, low, start, x, kernel):  # type: 
 
 
 @compiled
-def segment_rates(row_start, big, low, high, start, coefficient, number, factor, out):  # type: ignore[no-untyped-def]
+def segment_rates(segments, section, coefficient, number, factor, out):  # type: ignore[no-untyped-def]
     """Add factor times the rates to `out` (n + 2,); returns their sum, which is not finite if any is not."""
     total = 0.0
-    for p in range(row_start.size - 1):
+    for p in range(section.size - 1):
         rate = 0.0
-        for s in range(row_start[p], row_start[p + 1]):
-            c = coefficient[start[s] : start[s + 1]]
-            v = number[low[s] : high[s]]
+        for s in range(section[p], section[p + 1]):
+            low, start, stop = segments[s, 1], segments[s, 2], segments[s + 1, 2]
+            c = coefficient[start:stop]
+            v = number[low : low + stop - start]
             dot = 0.0
             for q in range(c.size):
                 dot += c[q] * v[q]
-            rate += number[big[s]] * dot
+            rate += number[segments[s, 0]] * dot
         out[p] += factor * rate
         total += out[p]
     return total
 
 
 @compiled
-def segment_jacobian(row_start, big, low, high, start, coefficient, number, factor, out):  # type: ignore[no-untyped-def]
+def segment_jacobian(segments, section, coefficient, number, factor, out):  # type: ignore[no-untyped-def]
     """Add factor times the exact Jacobian d rate[p] / d n[q] to `out` (n + 2, n + 2)."""
-    for p in range(row_start.size - 1):
-        for s in range(row_start[p], row_start[p + 1]):
-            c = coefficient[start[s] : start[s + 1]]
-            v = number[low[s] : high[s]]
-            row = out[p, low[s] : high[s]]
-            scale = factor * number[big[s]]
+    for p in range(section.size - 1):
+        for s in range(section[p], section[p + 1]):
+            big, low, start, stop = segments[s, 0], segments[s, 1], segments[s, 2], segments[s + 1, 2]
+            c = coefficient[start:stop]
+            v = number[low : low + stop - start]
+            row = out[p, low : low + stop - start]
+            scale = factor * number[big]
             dot = 0.0
             for q in range(c.size):
                 dot += c[q] * v[q]
                 row[q] += scale * c[q]
-            out[p, big[s]] += factor * dot
+            out[p, big] += factor * dot
 
 
 @compiled

@@ -79,15 +79,18 @@ class Scheme(ABC):
 class SegmentOperator:
     """A quadratic form stored as long dot products (see `_loops`)."""
 
-    segments: tuple[FloatArray, ...]
+    segments: NDArray[np.int64]
+    section: NDArray[np.int64]
     coefficient: FloatArray
 
     def add_rates(self, number: FloatArray, factor: float, out: FloatArray) -> float:
-        total: float = _loops.segment_rates(*self.segments, self.coefficient, number, factor, out)
+        total: float = _loops.segment_rates(
+            self.segments, self.section, self.coefficient, number, factor, out
+        )
         return total
 
     def add_jacobian(self, number: FloatArray, factor: float, out: FloatArray) -> None:
-        _loops.segment_jacobian(*self.segments, self.coefficient, number, factor, out)
+        _loops.segment_jacobian(self.segments, self.section, self.coefficient, number, factor, out)
 
 
 @dataclass(frozen=True, eq=False)
@@ -97,18 +100,17 @@ class SegmentScheme:
     grid: SizeGrid
     pivots: FloatArray  # those of the grid, continued past the largest birth
     births: Births
-    segments: tuple[FloatArray, ...]
+    segments: NDArray[np.int64]
+    section: NDArray[np.int64]
 
     @classmethod
     def build(cls, grid: SizeGrid, pivots: FloatArray, births: Births) -> SegmentScheme:
-        return cls(grid, pivots, births, _loops.layout(births[0], births[1], grid.sections))
+        return cls(grid, pivots, births, *_loops.layout(births[0], births[1], grid.sections))
 
     def aggregation(self, matrix: FloatArray) -> SegmentOperator:
-        row_start, big, low, _, start = self.segments
-        coefficient = _loops.fill(
-            *self.births, row_start, big, low, start, self.pivots, np.ascontiguousarray(matrix)
-        )
-        return SegmentOperator(self.segments, coefficient)
+        kernel = np.ascontiguousarray(matrix)
+        coefficient = _loops.fill(*self.births, self.segments, self.section, self.pivots, kernel)
+        return SegmentOperator(self.segments, self.section, coefficient)
 
 
 def continued(grid: SizeGrid, more: int) -> FloatArray:

@@ -3,9 +3,11 @@
 A new method is one class with these duties:
 
 1. Be a frozen dataclass of options with a `max_evaluations` field and a one-word `name`.
-2. `stepper(...)` returns an object that advances one step at a time, so that output, progress, limits and
+2. `stepper(...)` returns an object that advances a little at a time, so that output, progress, limits and
    interruption stay in one loop outside the method.
-3. The stepper uses the exact Jacobian that it is given: that is what keeps linear invariants (the particle
+3. `step(until)` never reports a time past `until`. Where the method has gone further inside, the state at
+   `until` is interpolated without loss of order.
+4. The stepper uses the exact Jacobian that it is given: that is what keeps linear invariants (the particle
    volume) at round-off when the method is implicit.
 4. `at(times)` interpolates inside the last step without loss of order.
 """
@@ -33,13 +35,10 @@ class Stepper(Protocol):
 
     @property
     def state(self) -> FloatArray:
-        """State at `time`, a flat array."""
+        """State at `time`, a flat array that the stepper does not write to again."""
 
-    def step(self) -> str | None:
-        """Advance one step; return None, or the reason why it was not possible."""
-
-    def at(self, times: FloatArray) -> FloatArray:
-        """States (n_times, n_state) at times inside the last step."""
+    def step(self, until: float) -> str | None:
+        """Advance by a step or a few, at most to `until`; return None, or the reason why it was not possible."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -50,6 +49,11 @@ class Method(ABC):
     ----------
     max_evaluations : int
         Rate evaluations after which a run is stopped.
+
+    Raises
+    ------
+    InputError
+        If max_evaluations is not a whole number of at least 1.
     """
 
     max_evaluations: int = 200_000

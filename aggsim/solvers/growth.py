@@ -13,8 +13,10 @@ from aggsim.sizes import SizeGrid
 # particles too few to matter: where the largest ones sweep up the small faster than they grow (settling), a
 # smaller share brings the numerical gelation forward by chasing a tail of round-off size.
 TOP_SHARE = 1e-7
+LOST_SHARE = 1e-9  # share that may pass the top in the step after which more sections are taken into use
 BEYOND_SHARE = 1e-3  # share of the volume past the top at which a run that cannot be extended is judged
 REMAINING = 1e-3  # a run stops when gelation is nearer than this share of the time that led to it
+AT_THE_END = 0.1  # the like where the run must end anyway, at the top of its grid or because the method fails
 STEEPEST = -0.05  # slope of the growth time against time below which it runs into zero
 
 _GUARD = 1.0  # doublings below the top that count as uppermost
@@ -50,16 +52,16 @@ class GrowthWatch:
         x = grid.volume
         first = min(int(np.searchsorted(x, x[-1] / 2.0**_GUARD)), x.size - 6)
         weights = np.zeros((2, x.size + 2))
-        weights[0, max(first, 0) : x.size] = x[max(first, 0) :]
-        weights[0, -1] = 1.0
+        weights[0, max(first, 0) : x.size] = x[max(first, 0) :] / self._volume
+        weights[0, -1] = 1.0 / self._volume
         weights[1, : x.size] = x * x
         self._weights = weights
         self._top = float(x[-1])
 
-    def look(self, state: FloatArray) -> tuple[float, bool]:
-        """Share of the volume at and beyond the top, and whether M2 has doubled since the last sighting."""
-        top, second = self._weights @ state
-        return float(top) / self._volume, bool(second >= self._next)
+    def look(self, state: FloatArray) -> tuple[float, float, bool]:
+        """Shares of the volume at or beyond the top, and beyond it; and whether M2 has doubled since a sighting."""
+        top, second = (self._weights @ state).tolist()
+        return top, float(state[-1]) / self._volume, second >= self._next
 
     def sight(self, time: float, state: FloatArray, rates: FloatArray) -> None:
         """Note the growth time of M2."""
@@ -82,9 +84,9 @@ class GrowthWatch:
             return None
         return last.time - last.growth_time / slope
 
-    def gelation_near(self, time: float) -> float | None:
-        """Gelation time [s] where it is so near that the run must end, else None."""
+    def gelation_near(self, time: float, within: float = REMAINING) -> float | None:
+        """Gelation time [s] where it is nearer than the share `within` of the time since the start, else None."""
         expected = self.gelation_time()
-        if expected is None or expected - time > REMAINING * (time - self._begin):
+        if expected is None or expected - time > within * (time - self._begin):
             return None
         return expected

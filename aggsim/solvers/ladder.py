@@ -14,7 +14,10 @@ from aggsim.errors import GridError
 from aggsim.schemes import Scheme
 from aggsim.sizes import SizeGrid
 
-ROOM = 4.0  # doublings of volume above the largest particle at the start
+NEAR = (
+    16.0  # doublings of volume above the largest particle within which the top is near enough to begin with
+)
+ROOM = 4.0  # doublings to begin with where the top is farther away
 CLIMB = 5.0  # doublings of volume that one climb adds
 UNSEEN = 1e-12  # share of the volume at the start that may wait in the uppermost section in use
 LARGEST_AUTOMATIC_GRID = 400  # sections
@@ -39,6 +42,8 @@ class Ladder:
         x = self._whole.volume
         above = np.cumsum((number * x)[::-1])[::-1]
         used = int(np.flatnonzero(above > UNSEEN * above[0])[-1])
+        if x[-1] <= 2.0**NEAR * x[used]:
+            return self._whole, number
         grid = self._part(2.0**ROOM * float(x[used]))
         kept = number[: grid.sections].copy()
         kept[-1] += float(number[grid.sections :] @ x[grid.sections :]) / float(grid.volume[-1])

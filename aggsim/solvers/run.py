@@ -12,10 +12,17 @@ from aggsim.result import Outcome, Status
 from aggsim.schemes import Scheme
 from aggsim.sizes import SizeGrid
 from aggsim.solvers.base import Method, Stepper
-from aggsim.solvers.growth import BEYOND_SHARE, TOP_SHARE, GrowthWatch
+from aggsim.solvers.growth import (
+    AT_THE_END,
+    BEYOND_SHARE,
+    LOST_SHARE,
+    REMAINING,
+    TOP_SHARE,
+    GrowthWatch,
+)
 from aggsim.solvers.ladder import Ladder
 from aggsim.solvers.progress import Progress
-from aggsim.solvers.system import NotFiniteError, System
+from aggsim.solvers.system import NotFiniteError, System, WorkLimitError
 from aggsim.vessels import Vessel
 
 ATOL = 1e-6  # absolute tolerance over rtol, in units of the number or volume scale of a section
@@ -37,6 +44,7 @@ class Run:
     restarts: int = -1  # the first start is no restart
     extensions: int = 0
     _judged: bool = False
+    _beyond: float = 0.0
     _spent: tuple[int, int] = (0, 0)
     _rows: list[tuple[float, FloatArray]] = field(default_factory=list)
 
@@ -67,10 +75,13 @@ class Run:
             status = Status(Outcome.INTERRUPTED, self._time)
         except NotFiniteError as error:
             status = Status(Outcome.NOT_FINITE, self._time, f"{error}; look at the kernel for these sizes.")
+        except WorkLimitError:
+            detail = f"max_evaluations={self.method.max_evaluations}; try a larger one, or a looser rtol."
+            status = Status(Outcome.WORK_LIMIT, self._time, detail)
         if status is None:
             return Status(Outcome.COMPLETED, end)
         if not self._rows or self._rows[-1][0] < self._time:
-            self._rows.append((self._time, self._state.copy()))
+            self._rows.append((self._time, self._state))
         return status
 
     @property
@@ -98,7 +109,8 @@ class Run:
 
     def _use(self, grid: SizeGrid) -> None:
         self._grid = grid
-        self._system = System(self.vessel, self.scheme, grid)
+        allowed = self.method.max_evaluations - self._spent[0]
+        self._system = System(self.vessel, self.scheme, grid, allowed)
         self._watch.on(grid)
         scale = np.minimum(self._initial_number, self.initial_volume / grid.volume)
         beyond = [self._initial_number, self.initial_volume]
@@ -123,64 +135,54 @@ class Run:
         outputs = self.outputs.tolist()
         next_output = bisect_right(outputs, self._time)
         while self._time < stop:
-            failure = stepper.step()
+            failure = stepper.step(min(outputs[next_output], stop))
             if failure is not None:
-                return self._gelled() or Status(Outcome.STALLED, self._time, f"{self.method.name}: {failure}")
+                stalled = Status(Outcome.STALLED, self._time, f"{self.method.name}: {failure}")
+                return self._gelled(AT_THE_END) or stalled
             self.steps += 1
-            state = stepper.state
-            share, doubled = self._watch.look(state)
-            if share > TOP_SHARE and self._climb():
-                # the step is taken again from the last state, so that nothing has passed the top
-                stepper = self._begin(start, stop)
+            top, beyond, doubled = self._watch.look(stepper.state)
+            longer = self.ladder.next(self._grid) if top > TOP_SHARE else None
+            if longer is not None and beyond > self._beyond + LOST_SHARE:
+                # too much has passed the top to be let go: take the step again on more sections
+                stepper = self._climb(longer, start, stop)
                 continue
-            reached = stepper.time
-            if next_output < len(outputs) and outputs[next_output] <= reached:
-                after = bisect_right(outputs, reached)
-                inside = self.outputs[next_output:after]
-                self._rows += list(zip(inside.tolist(), stepper.at(inside), strict=True))
-                next_output = after
-            self._time, self._state = reached, state.copy()
-            full = share > BEYOND_SHARE and not self._judged
-            if doubled or full:
-                self._judged |= full
-                self._watch.sight(reached, state, self._system.rates(reached, state))
-                status = self._verdict(share)
+            self._time, self._state, self._beyond = stepper.time, stepper.state, beyond
+            if self._time == outputs[next_output]:
+                self._rows.append((self._time, self._state))
+                next_output += 1
+            if doubled or (top > BEYOND_SHARE and not self._judged):
+                self._judged = top > BEYOND_SHARE
+                self._watch.sight(self._time, self._state, self._system.rates(self._time, self._state))
+                status = self._verdict(top)
                 if status is not None:
                     return status
-            if self.rate_evaluations > self.method.max_evaluations:
-                detail = f"max_evaluations={self.method.max_evaluations}; try a larger one, or a looser rtol."
-                return Status(Outcome.WORK_LIMIT, self._time, detail)
-            self.progress.update(reached / outputs[-1], reached)
+            if longer is not None and self._time < stop:
+                stepper = self._climb(longer, start, stop)
+            self.progress.update(self._time / outputs[-1], self._time)
         return None
 
-    def _climb(self) -> bool:
-        """Take more sections into use; False where there are no more."""
-        grid = self.ladder.next(self._grid)
-        if grid is None:
-            return False
+    def _climb(self, longer: SizeGrid, start: float, stop: float) -> Stepper:
+        """Take more sections into use and begin again from the last state."""
         self._spent = (self.rate_evaluations, self.jacobian_evaluations)
-        self._use(grid)
-        self._state = _padded(self._state, grid)
+        self._use(longer)
+        self._state = _padded(self._state, longer)
         self.extensions += 1
-        return True
+        return self._begin(start, stop)
 
-    def _verdict(self, share: float) -> Status | None:
+    def _verdict(self, top: float) -> Status | None:
         """Gelation, or an outgrown grid of our own choice."""
-        expected = self._watch.gelation_near(self._time)
-        if expected is not None or share > BEYOND_SHARE:
-            gelled = self._gelled()
-            if gelled is not None:
-                return gelled
-        if share > BEYOND_SHARE and self.ladder.automatic:
+        full = top > BEYOND_SHARE
+        gelled = self._gelled(AT_THE_END if full else REMAINING)
+        if gelled is None and full and self.ladder.automatic:
             detail = (
                 f"{self.grid.sections} sections reach {self.grid.volume[-1]:.3g} m3. Try: fewer sections per "
                 "doubling on a grid of your own, or shorter times."
             )
             return Status(Outcome.OUTGROWN, self._time, detail)
-        return None
+        return gelled
 
-    def _gelled(self) -> Status | None:
-        expected = self._watch.gelation_time()
+    def _gelled(self, within: float) -> Status | None:
+        expected = self._watch.gelation_near(self._time, within)
         if expected is None:
             return None
         detail = (

@@ -18,20 +18,22 @@ class NotFiniteError(ArithmeticError):
     """A rate of change was not finite; methods would step on with it without a word."""
 
 
-def _always_one(_: float) -> float:
-    return 1.0
+class WorkLimitError(RuntimeError):
+    """More rate evaluations were asked for than the run allows."""
 
 
 class System:
     """Rates and exact Jacobian of a vessel on a grid, with counts of their use."""
 
-    def __init__(self, vessel: Vessel, scheme: Scheme, grid: SizeGrid) -> None:
-        self.grid = grid
+    def __init__(self, vessel: Vessel, scheme: Scheme, grid: SizeGrid, allowed: float = math.inf) -> None:
+        """Prepare the terms of `vessel` on `grid`; `allowed` rate evaluations may follow."""
         self.size = grid.sections + BEYOND
         self.rate_evaluations = 0
+        self._allowed = allowed
+        self._stop = math.inf
         self.jacobian_evaluations = 0
         self._terms = vessel.terms(scheme.prepare(grid))
-        self._active: list[tuple[Any, Callable[[float], float]]] = []
+        self._active: list[tuple[Any, Callable[[float], float] | None]] = []
 
     @property
     def jumps(self) -> list[float]:
@@ -40,19 +42,22 @@ class System:
 
     def on(self, start: float, stop: float) -> None:
         """Use the strengths of the interval [start, stop], which holds no jump inside."""
+        self._stop = stop
         self._active = [
-            (term.operator, _always_one if term.strength is None else term.strength.on(start, stop))
+            (term.operator, None if term.strength is None else term.strength.on(start, stop))
             for term in self._terms
         ]
 
     def rates(self, time: float, state: FloatArray) -> FloatArray:
         """Rates of change of the state (n_sections + 2,)."""
         self.rate_evaluations += 1
+        if self.rate_evaluations > self._allowed:
+            raise WorkLimitError
         out = np.zeros(self.size)
         total = 0.0
         for operator, strength in self._active:
-            total = operator.add_rates(state, strength(time), out)
-        if not math.isfinite(total):
+            total = operator.add_rates(state, self._factor(strength, time), out)
+        if total - total != 0.0:  # infinite or not a number; quicker than a call
             raise NotFiniteError(f"a rate of change was not finite at t = {time:.6g} s")
         return out
 
@@ -61,5 +66,9 @@ class System:
         self.jacobian_evaluations += 1
         out = np.zeros((self.size, self.size))
         for operator, strength in self._active:
-            operator.add_jacobian(state, strength(time), out)
+            operator.add_jacobian(state, self._factor(strength, time), out)
         return out
+
+    def _factor(self, strength: Callable[[float], float] | None, time: float) -> float:
+        # a method may look past the end of a stretch, a strength may not
+        return 1.0 if strength is None else strength(min(time, self._stop))

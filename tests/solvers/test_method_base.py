@@ -13,20 +13,14 @@ class EulerStepper:
     """Explicit Euler with a fixed number of steps: the shortest stepper there is."""
 
     def __init__(self, rates, start, state, stop) -> None:  # type: ignore[no-untyped-def]
-        self._rates, self.time, self.state, self._stop = rates, start, state, stop
+        self._rates, self.time, self.state = rates, start, state
         self._size = (stop - start) / 2000
 
-    def step(self) -> str | None:
-        self._before = (self.time, self.state)
-        end = min(self.time + self._size, self._stop)
+    def step(self, until: float) -> str | None:
+        end = min(self.time + self._size, until)
         self.state = self.state + (end - self.time) * self._rates(self.time, self.state)
-        self.time = self._stop if self._stop - end < 1e-9 * self._stop else end
+        self.time = until if until - end < 1e-9 * until else end
         return None
-
-    def at(self, times: np.ndarray) -> np.ndarray:
-        (t0, y0), (t1, y1) = self._before, (self.time, self.state)
-        share = ((times - t0) / (t1 - t0))[:, None]
-        return (1 - share) * y0 + share * y1
 
 
 @dataclass(frozen=True, kw_only=True)
