@@ -12,6 +12,9 @@ class Outcome(Enum):
     COMPLETED = "completed: every output time was reached"
     GELATION = "stopped at gelation: the largest particles grow without bound in a finite time"
     OUTGROWN = "stopped because the distribution outgrew the largest grid that is built automatically"
+    UNRESOLVED = (
+        "stopped because the grid is too coarse: sections with negative numbers hold too much of the volume"
+    )
     INTERRUPTED = "interrupted by the user"
     STALLED = "stopped because the integration method could not go on"
     NOT_FINITE = "stopped because a rate of change was not a finite number"

@@ -29,18 +29,19 @@ def compiled(function):  # type: ignore[no-untyped-def]
 
 
 @compiled
-def interpolation_births(x, n, order):  # type: ignore[no-untyped-def]
-    """Lagrange weights of every birth x_i + x_j over its `order` nearest pivots.
+def interpolation_births(x, n, order, half):  # type: ignore[no-untyped-def]
+    """Lagrange weights of every birth x_i + x_j over its `order` nearest pivots, in v or (`half`) in v**0.5.
 
-    `x` holds the n pivots of the grid, continued upward past 2 x[n - 1] by at least order / 2 more, so that
-    births at the top are treated like all others. Returns (first, count, weight): for the pair
-    t = i (i + 1) / 2 + j the targets are first[t] to first[t] + count[t] - 1. Where i is among its own
-    targets its entry is w_i - 1, the net change, which keeps full relative accuracy when x_j is far below x_i.
+    `x` holds the n pivots of the grid, continued upward past 2 x[n - 1] by at least order / 2 more. Returns
+    (first, count, weight): for the pair t = i (i + 1) / 2 + j the targets are first[t] to
+    first[t] + count[t] - 1. Where i is among its own targets its entry is w_i - 1, the net change, which keeps
+    full relative accuracy when x_j is far below x_i.
     """
     pairs = n * (n + 1) // 2
     first = np.zeros(pairs, np.int64)
     count = np.ones(pairs, np.int64)
     weight = np.zeros((pairs, order))
+    root = np.sqrt(x)
     delta = np.empty(order)
     for i in range(n):
         cell = i
@@ -55,24 +56,48 @@ def interpolation_births(x, n, order):  # type: ignore[no-untyped-def]
             if x[cell + 1] - born < 1e-13 * born:
                 first[t], weight[t, 0] = cell + 1, 1.0
                 continue
-            a = max(0, cell - order // 2 + 1)  # at the bottom the stencil shifts
-            first[t], count[t] = a, order
-            for p in range(order):
-                delta[p] = x[a + p] - x[i]
-            others = 0.0
+            # at the top the order falls, at the bottom the stencil shifts
+            nodes = max(2, min(order, 2 * (n - cell)))
+            a = max(0, cell - nodes // 2 + 1)
+            first[t], count[t] = a, nodes
+            if half and nodes > 2:
+                step = x[j] / (np.sqrt(born) + root[i])
+                for p in range(nodes):
+                    delta[p] = root[a + p] - root[i]
+            else:
+                step = x[j]
+                for p in range(nodes):
+                    delta[p] = x[a + p] - x[i]
+            w = weight[t]
+            number, volume = 0.0, 0.0
             own = -1
-            for p in range(order):
+            for p in range(nodes):
                 if a + p == i:
                     own = p
                     continue
-                w = 1.0
-                for s in range(order):
+                w[p] = 1.0
+                for s in range(nodes):
                     if s != p:
-                        w *= (x[j] - delta[s]) / (delta[p] - delta[s])
-                weight[t, p] = w
-                others += w
+                        w[p] *= (step - delta[s]) / (delta[p] - delta[s])
+                number += w[p]
+                volume += w[p] * (x[a + p] - x[i])
+            # number and volume to the last digit: what round-off left goes to the pivots around the birth
+            c = cell - a
             if own >= 0:
-                weight[t, own] = -others
+                if cell > i:
+                    shift = (x[j] - volume) / (x[cell + 1] - x[cell])
+                    w[c] -= shift
+                    w[c + 1] += shift
+                else:
+                    shift = (x[j] - volume) / (x[cell + 1] - x[i])
+                    w[c + 1] += shift
+                    number += shift
+                w[own] = -number
+            else:
+                missing = 1.0 - number
+                shift = (x[j] - volume - missing * (x[cell] - x[i])) / (x[cell + 1] - x[cell])
+                w[c] += missing - shift
+                w[c + 1] += shift
     return first, count, weight
 
 
@@ -99,13 +124,13 @@ def layout(first, count, n):  # type: ignore[no-untyped-def]
         for i in range(n):
             if high[p, i] > low[p, i]:
                 section[p + 1] += 1
-    segments = np.zeros((section[n + 2] + 1, 3), np.int64)
+    segments = np.zeros((section[n + 2] + 1, 3), np.uint64)
     s = 0
     for p in range(n + 2):
         for i in range(n):
             if high[p, i] > low[p, i]:
                 segments[s, 0], segments[s, 1] = i, low[p, i]
-                segments[s + 1, 2] = segments[s, 2] + high[p, i] - low[p, i]
+                segments[s + 1, 2] = segments[s, 2] + np.uint64(high[p, i] - low[p, i])
                 s += 1
     return segments, section
 
@@ -117,7 +142,7 @@ def fill(first, count, weight, segments, section, x, kernel):  # type: ignore[no
     where = np.full((n + 2, n), -1, np.int64)
     for p in range(n + 2):
         for s in range(section[p], section[p + 1]):
-            where[p, segments[s, 0]] = segments[s, 2] - segments[s, 1]
+            where[p, segments[s, 0]] = np.int64(segments[s, 2]) - np.int64(segments[s, 1])
     out = np.zeros(segments[-1, 2])
     for i in range(n):
         for j in range(i + 1, n):  # i as the smaller partner
@@ -141,19 +166,30 @@ def fill(first, count, weight, segments, section, x, kernel):  # type: ignore[no
 
 
 @compiled
+def occupied(number, n):  # type: ignore[no-untyped-def]
+    """Sections up to the last that holds anything; below 1e-200 products denormalise, which is slow and nothing."""
+    top = n
+    while top > 0 and abs(number[top - 1]) < 1e-200:
+        top -= 1
+    return top
+
+
+@compiled
 def segment_rates(segments, section, coefficient, number, factor, out):  # type: ignore[no-untyped-def]
     """Add factor times the rates to `out` (n + 2,); returns their sum, which is not finite if any is not."""
+    top = np.uint64(occupied(number, section.size - 3))
     total = 0.0
     for p in range(section.size - 1):
         rate = 0.0
         for s in range(section[p], section[p + 1]):
-            low, start, stop = segments[s, 1], segments[s, 2], segments[s + 1, 2]
-            c = coefficient[start:stop]
-            v = number[low : low + stop - start]
+            # unsigned indices spare the check for negative ones
+            big, low, start = segments[s, 0], segments[s, 1], segments[s, 2]
+            if big >= top:
+                continue
             dot = 0.0
-            for q in range(c.size):
-                dot += c[q] * v[q]
-            rate += number[segments[s, 0]] * dot
+            for q in range(min(segments[s + 1, 2] - start, top - min(low, top))):
+                dot += coefficient[start + q] * number[low + q]
+            rate += number[big] * dot
         out[p] += factor * rate
         total += out[p]
     return total
@@ -164,15 +200,12 @@ def segment_jacobian(segments, section, coefficient, number, factor, out):  # ty
     """Add factor times the exact Jacobian d rate[p] / d n[q] to `out` (n + 2, n + 2)."""
     for p in range(section.size - 1):
         for s in range(section[p], section[p + 1]):
-            big, low, start, stop = segments[s, 0], segments[s, 1], segments[s, 2], segments[s + 1, 2]
-            c = coefficient[start:stop]
-            v = number[low : low + stop - start]
-            row = out[p, low : low + stop - start]
+            big, low, start = segments[s, 0], segments[s, 1], segments[s, 2]
             scale = factor * number[big]
             dot = 0.0
-            for q in range(c.size):
-                dot += c[q] * v[q]
-                row[q] += scale * c[q]
+            for q in range(segments[s + 1, 2] - start):
+                dot += coefficient[start + q] * number[low + q]
+                out[p, low + q] += scale * coefficient[start + q]
             out[p, big] += factor * dot
 
 

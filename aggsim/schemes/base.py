@@ -79,7 +79,7 @@ class Scheme(ABC):
 class SegmentOperator:
     """A quadratic form stored as long dot products (see `_loops`)."""
 
-    segments: NDArray[np.int64]
+    segments: NDArray[np.uint64]
     section: NDArray[np.int64]
     coefficient: FloatArray
 
@@ -100,7 +100,7 @@ class SegmentScheme:
     grid: SizeGrid
     pivots: FloatArray  # those of the grid, continued past the largest birth
     births: Births
-    segments: NDArray[np.int64]
+    segments: NDArray[np.uint64]
     section: NDArray[np.int64]
 
     @classmethod
@@ -114,14 +114,14 @@ class SegmentScheme:
 
 
 def continued(grid: SizeGrid, more: int) -> FloatArray:
-    """Pivots of the grid, continued past twice the last one and by `more` pivots on top of that.
+    """Pivots of the grid, continued by its last ratio past twice the last one and by `more` on top of that.
 
     The continuation takes part in the scheme like the grid itself, but what lands there is counted as beyond
     the grid. Without it, a particle of the last section would leave the grid with any collision at all, at a
     rate that makes the system stiff for nothing.
     """
     x = grid.volume
-    ratio = max(float(x[-1] / x[-2]), 2.0**0.125)  # closely spaced pivots need no close continuation
+    ratio = float(x[-1] / x[-2])
     steps = int(np.ceil(np.log(2.0) / np.log(ratio) + 1e-9)) + 1 + more
     return np.concatenate([x, x[-1] * ratio ** np.arange(1.0, steps + 1.0)])
 

@@ -10,8 +10,9 @@ from aggsim.schemes import _loops
 from aggsim.schemes.base import Scheme, SegmentScheme, continued, require_sections
 from aggsim.sizes import SizeGrid, StartingDistribution, project, starting_grid
 
-# sections per doubling at which the default grids of the orders give sizes and moments to a few parts in 1e4
-PER_DOUBLING = {2: 8, 4: 4, 6: 3}
+# Sections per doubling of the default grids: sizes within a few parts in 1000 (2) or 10,000 (4 and 6), also
+# with settling, whose kink at equal sizes limits every order
+PER_DOUBLING = {2: 8, 4: 4, 6: 4}
 
 
 @dataclass(frozen=True)
@@ -20,11 +21,16 @@ class FixedPivot(Scheme):
 
         d/dt sum_k n_k f(x_k) = 1/2 sum_ij K_ij n_i n_j [ (I f)(x_i + x_j) - f(x_i) - f(x_j) ]
 
-    where I f is the Lagrange interpolant of f over the `moments` nearest pivots, so that every birth keeps
-    its moments 0 to moments - 1 in v. With 2 this is the fixed pivot technique [1]_ (number and volume kept,
-    second order); 4 and 6 take up the idea of high-order moment conservation [2]_ on the same quadratic form
-    (fourth and sixth order for smooth kernels). Births may then get small negative weights: the result
-    reports the negative share of the volume, nothing is clipped.
+    where I f is the Lagrange interpolant of f over the `moments` nearest pivots, so that every birth keeps as
+    many moments:
+
+    - 2: orders 0 and 1 in v, number and volume; the fixed pivot technique [1]_, second order;
+    - 4: orders 0, 1, 2, 3 in v, interpolation in v, fourth order;
+    - 6: orders 0, 1/2, 1, 3/2, 2, 5/2 in v, interpolation in v**(1/2), sixth order.
+
+    Orders 4 and 6 take up the idea of high-order moment conservation [2]_ on the same quadratic form. Births
+    may then get small negative weights: the result reports the negative share of the volume, nothing is
+    clipped. Towards the top of the grid the order falls to 2.
 
     Parameters
     ----------
@@ -35,6 +41,11 @@ class FixedPivot(Scheme):
     ------
     InputError
         If moments is not 2, 4 or 6.
+
+    Notes
+    -----
+    Quintic interpolation in v itself, moments 0 to 5, is less accurate on geometric grids (neighbouring pivots
+    spread over a factor of three) and has growing modes where large particles take up small ones.
 
     References
     ----------
@@ -57,7 +68,7 @@ class FixedPivot(Scheme):
     def prepare(self, grid: SizeGrid) -> SegmentScheme:
         self.check(grid)
         pivots = continued(grid, self.moments // 2)
-        births = _loops.interpolation_births(pivots, grid.sections, self.moments)
+        births = _loops.interpolation_births(pivots, grid.sections, self.moments, self.moments == 6)
         return SegmentScheme.build(grid, pivots, births)
 
     def default_grid(self, start: StartingDistribution) -> SizeGrid:

@@ -12,12 +12,14 @@ from aggsim.sizes import SizeGrid
 # Share of the volume in the uppermost sections at which more sections are taken into use. Less would follow
 # particles too few to matter: where the largest ones sweep up the small faster than they grow (settling), a
 # smaller share brings the numerical gelation forward by chasing a tail of round-off size.
-TOP_SHARE = 1e-7
+TOP_SHARE = 1e-6
 LOST_SHARE = 1e-9  # share that may pass the top in the step after which more sections are taken into use
 BEYOND_SHARE = 1e-3  # share of the volume past the top at which a run that cannot be extended is judged
 REMAINING = 1e-3  # a run stops when gelation is nearer than this share of the time that led to it
 AT_THE_END = 0.1  # the like where the run must end anyway, at the top of its grid or because the method fails
 STEEPEST = -0.05  # slope of the growth time against time below which it runs into zero
+
+NEGATIVE_LIMIT = 1e-2  # share of the volume in negative sections at which a result means nothing any more
 
 _GUARD = 1.0  # doublings below the top that count as uppermost
 
@@ -56,12 +58,17 @@ class GrowthWatch:
         weights[0, -1] = 1.0 / self._volume
         weights[1, : x.size] = x * x
         self._weights = weights
+        self._pivots = x
         self._top = float(x[-1])
 
     def look(self, state: FloatArray) -> tuple[float, float, bool]:
         """Shares of the volume at or beyond the top, and beyond it; and whether M2 has doubled since a sighting."""
         top, second = (self._weights @ state).tolist()
         return top, float(state[-1]) / self._volume, second >= self._next
+
+    def negative_share(self, state: FloatArray) -> float:
+        """Share of the volume that stands in sections with a negative number."""
+        return -float(np.minimum(state[:-2], 0.0) @ self._pivots) / self._volume
 
     def sight(self, time: float, state: FloatArray, rates: FloatArray) -> None:
         """Note the growth time of M2."""

@@ -16,6 +16,7 @@ from aggsim.solvers.growth import (
     AT_THE_END,
     BEYOND_SHARE,
     LOST_SHARE,
+    NEGATIVE_LIMIT,
     REMAINING,
     TOP_SHARE,
     GrowthWatch,
@@ -142,7 +143,7 @@ class Run:
             self.steps += 1
             top, beyond, doubled = self._watch.look(stepper.state)
             longer = self.ladder.next(self._grid) if top > TOP_SHARE else None
-            if longer is not None and beyond > self._beyond + LOST_SHARE:
+            if longer is not None and abs(beyond - self._beyond) > LOST_SHARE:
                 # too much has passed the top to be let go: take the step again on more sections
                 stepper = self._climb(longer, start, stop)
                 continue
@@ -156,6 +157,9 @@ class Run:
                 status = self._verdict(top)
                 if status is not None:
                     return status
+            negative = self._watch.negative_share(self._state)
+            if negative > NEGATIVE_LIMIT:
+                return Status(Outcome.UNRESOLVED, self._time, _unresolved(negative))
             if longer is not None and self._time < stop:
                 stepper = self._climb(longer, start, stop)
             self.progress.update(self._time / outputs[-1], self._time)
@@ -190,6 +194,13 @@ class Run:
             "volume to particles without limit of size; a sink (settling out, breakage) or a shorter time helps."
         )
         return Status(Outcome.GELATION, self._time, detail, gelation_time=expected)
+
+
+def _unresolved(negative: float) -> str:
+    return (
+        f"They hold {negative:.2g} of the volume; {NEGATIVE_LIMIT:g} is allowed. Try: more sections per doubling, "
+        "SizeGrid.monomers_then_geometric for a monodisperse start, or FixedPivot(moments=2)."
+    )
 
 
 def _padded(state: FloatArray, grid: SizeGrid) -> FloatArray:

@@ -51,7 +51,7 @@ def simulate(
     times : float or (n_times,)
         Output times [s], not negative and strictly increasing. The states are those at exactly these times.
     grid : SizeGrid, optional
-        Pivots. Without it a grid is chosen from `start`, and continued upward as soon as 1e-7 of the volume
+        Pivots. Without it a grid is chosen from `start`, and continued upward as soon as 1e-6 of the volume
         reaches its uppermost sections, before it passes the top. On a grid that is given, what passes
         the top is counted in `result.balance`; sections far above the particles are taken into use in the same
         way, when they are needed.
@@ -90,7 +90,7 @@ def simulate(
     recognised by the growth time of the second moment, M2 / (dM2/dt), running linearly into zero; the run
     then ends within 0.1 % of the estimated gelation time and reports it. For kernels under which large
     particles sweep up small ones faster than they grow, such as differential settling, theory puts gelation
-    at once [1]_; the time found is then that at which a share of 1e-7 of the volume runs away, and it depends
+    at once [1]_; the time found is then that at which a share of 1e-6 of the volume runs away, and it depends
     weakly on the resolution.
 
     References

@@ -37,6 +37,7 @@ class Aggregation:
             )
 
     def terms(self, prepared: Any) -> list[Term]:
+        """One term for each different factor in time among the parts of the kernel."""
         matrices: list[FloatArray] = []  # parts that share a factor in time share an operator
         strengths: list[Any] = []
         for _, matrix, strength in self.kernel.part_matrices(prepared.grid.volume):
@@ -48,6 +49,7 @@ class Aggregation:
         return [Term(prepared.aggregation(m), s) for m, s in zip(matrices, strengths, strict=True)]
 
     def collisions(self, volume: FloatArray, times: FloatArray, number: FloatArray) -> dict[str, Collisions]:
+        """Collision events [1/(m3 s)] and volume flux [1/s] of each part, for numbers (n_times, n_sections)."""
         out = {}
         for name, matrix, strength in self.kernel.part_matrices(volume):
             factor = np.ones(times.size) if strength is None else np.array([strength(t) for t in times])

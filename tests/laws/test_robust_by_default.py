@@ -59,7 +59,10 @@ def past_gelation(kernel: str, start: str) -> ag.Result:
 
 @cache
 def nine_tenths(kernel: str, start: str, method: ag.methods.Method | None = None) -> ag.Result:
-    end = 0.9 * past_gelation(kernel, start).status.time
+    # Under settling, theory puts the gelation of a start with a long tail at once; the time found is that at
+    # which 1e-6 of the volume runs away, and it moves by a fifth with details such as the output times.
+    share = 0.75 if start == "wide" else 0.9
+    end = share * past_gelation(kernel, start).status.time
     return ag.simulate(ag.Batch(KERNELS[kernel]), STARTS[start], [0.0, end / 2, end], method=method)
 
 
@@ -105,7 +108,7 @@ def test_a_grid_over_nine_decades_of_volume(start: str) -> None:
     elif start == "narrow":
         grid = ag.SizeGrid.geometric(smallest=smallest, largest=1e9 * smallest, per_doubling=7)
     else:
-        grid = ag.SizeGrid.geometric(smallest=smallest, largest=1e9 * smallest, per_doubling=3)
+        grid = ag.SizeGrid.geometric(smallest=smallest, largest=1e9 * smallest, per_doubling=4)
     end = 0.9 * past_gelation("compact", start).status.time
     if start == "wide":  # its own tail reaches past nine decades within minutes
         grid, end = ag.SizeGrid.geometric(smallest=smallest, largest=1e14 * smallest, per_doubling=3), end / 2

@@ -186,7 +186,8 @@ def test_a_small_particle_does_not_push_the_last_section_over_the_top(scheme: ag
     ratio = x[-1] / x[-2]
     linear = 0.7 * x[0] / (x[-1] * (ratio - 1.0))  # share of the first pivot past the top, by linear sharing
     assert 0.0 < rates[-2] < 2.0 * linear
-    assert rates[-2] == pytest.approx(linear, rel=1e-12) or scheme in SCHEMES[1:3]
+    if scheme in (ag.FixedPivot(moments=2), ag.Sectional()):
+        assert rates[-2] == pytest.approx(linear, rel=1e-12)
 
 
 def test_the_continuation_covers_every_birth_with_room_for_the_stencil() -> None:

@@ -116,3 +116,12 @@ def test_coarse_grids_warn_of_negative_numbers() -> None:
     with pytest.warns(AccuracyWarning, match="negative number"):
         result = ag.simulate(CONSTANT, MONO, [0.0, 10.0], grid=grid, scheme=ag.FixedPivot(4))
     assert result.balance.negative_share.max() > 1e-5
+
+
+def test_a_grid_that_is_far_too_coarse_stops_the_run() -> None:
+    grid = ag.SizeGrid.geometric(smallest=1.0, largest=1e6, per_doubling=0.4)
+    result = ag.simulate(
+        CONSTANT, MONO, [0.0, 10.0], grid=grid, scheme=ag.FixedPivot(6), raise_unfinished=False
+    )
+    assert result.status.outcome is ag.Outcome.UNRESOLVED
+    assert "more sections per doubling" in str(result.status)
