@@ -74,11 +74,13 @@ def weak_form(x: Array, matrix: Array, number: Array, nodes: int) -> Plain:
 
     d/dt sum_k n_k f(x_k) = 1/2 sum_ij K_ij n_i n_j [(I f)(x_i + x_j) - f(x_i) - f(x_j)],
 
-    I f the Lagrange interpolant of f over the `nodes` pivots nearest to x_i + x_j, and f = 1 at one pivot,
-    0 at the others. `x` must end in a geometric stretch, along which the pivots are continued.
+    I f the Lagrange interpolant of f over the `nodes` pivots nearest to x_i + x_j, in v or for 6 nodes in its
+    square root, and f = 1 at one pivot, 0 at the others. `x` must end in a geometric stretch, along which the
+    pivots are continued.
     """
     n = x.size
     pivots = continued_geometrically(x)
+    power = 0.5 if nodes == 6 else 1.0
     plain = Plain(np.zeros(n + BEYOND), np.zeros(n + BEYOND))
     for i in range(n):
         for j in range(n):
@@ -87,9 +89,10 @@ def weak_form(x: Array, matrix: Array, number: Array, nodes: int) -> Plain:
             below = int(np.sum(pivots <= born)) - 1
             first = max(0, below - nodes // 2 + 1)
             stencil = pivots[first : first + nodes]
+            at = stencil**power
             for p, pivot in enumerate(stencil):
-                others = np.delete(stencil, p)
-                weight = float(np.prod((born - others) / (pivot - others)))
+                others = np.delete(at, p)
+                weight = float(np.prod((born**power - others) / (at[p] - others)))
                 if first + p < n:
                     plain.add(first + p, events, weight)
                 else:

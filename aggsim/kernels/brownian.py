@@ -37,7 +37,7 @@ def brownian(structure: Structure, medium: Medium) -> Kernel:
     """
     require_structure(structure)
     require_medium(medium)
-    return Kernel((Part("brownian", _Brownian(structure, medium)),))
+    return Kernel((Part("Brownian", _Brownian(structure, medium)),))
 
 
 def brownian_in_gas(structure: Structure, medium: Medium) -> Kernel:
@@ -75,7 +75,7 @@ def brownian_in_gas(structure: Structure, medium: Medium) -> Kernel:
             "a length above 0 [m] for collisions in a gas",
             "Medium.air(temperature=293.15), or brownian(...) for a liquid",
         )
-    return Kernel((Part("brownian in gas", _BrownianInGas(structure, medium)),))
+    return Kernel((Part("Brownian in gas", _BrownianInGas(structure, medium)),))
 
 
 @dataclass(frozen=True)

@@ -23,7 +23,8 @@ class Sectional(Scheme):
         lower share = 1 - upper share,                                            into section i + k - 1
 
     where k is the smallest number with S_k - k <= d and S_k = floor(1 - q ln(1 - 2**(-k/q)) / ln 2); equal
-    sections give one particle in section i + q. Number and volume are kept; second order in 1/q.
+    sections give one particle in section i + q. Number and volume are kept; second order in 1/q. On the same
+    grid the shares equal those of FixedPivot(moments=2), so the two are no independent check of each other.
 
     Raises
     ------

@@ -49,7 +49,11 @@ class Aggregation:
         return [Term(prepared.aggregation(m), s) for m, s in zip(matrices, strengths, strict=True)]
 
     def collisions(self, volume: FloatArray, times: FloatArray, number: FloatArray) -> dict[str, Collisions]:
-        """Collision events [1/(m3 s)] and volume flux [1/s] of each part, for numbers (n_times, n_sections)."""
+        """Collision events [1/(m3 s)] and volume flux [1/s] of each part, for numbers (n_times, n_sections).
+
+        Negative numbers of round-off size count as zero here: times a steep kernel they would be collisions.
+        """
+        number = np.maximum(number, 0.0)
         out = {}
         for name, matrix, strength in self.kernel.part_matrices(volume):
             factor = np.ones(times.size) if strength is None else np.array([strength(t) for t in times])

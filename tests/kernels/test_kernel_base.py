@@ -82,7 +82,7 @@ def test_scales_multiply_and_reach_every_part() -> None:
 
 def test_sum_keeps_parts_and_names() -> None:
     total = BROWNIAN / 40.0 + 0.3 * SHEAR + PHYSICAL["settling"]
-    assert total.names == ("brownian", "shear", "settling")
+    assert total.names == ("Brownian", "shear", "settling")
     rates = [matrix for _, matrix, _ in total.part_matrices(SIZES)]
     np.testing.assert_allclose(sum(rates), total(SIZES[:, None], SIZES), rtol=1e-14)
     np.testing.assert_allclose(rates[0], BROWNIAN.part_matrices(SIZES)[0].matrix / 40.0, rtol=1e-15)
@@ -104,13 +104,13 @@ def test_equal_names_are_counted() -> None:
 def test_a_part_by_its_name() -> None:
     total = BROWNIAN + 0.3 * SHEAR
     assert total["shear"] == 0.3 * SHEAR
-    with pytest.raises(KernelError, match="'brownian', 'shear'"):
+    with pytest.raises(KernelError, match="'Brownian', 'shear'"):
         total["settling"]
 
 
 def test_renaming() -> None:
     assert BROWNIAN.named("slow").names == ("slow",)
-    assert (BROWNIAN + SHEAR).named("tank").names == ("tank: brownian", "tank: shear")
+    assert (BROWNIAN + SHEAR).named("tank").names == ("tank: Brownian", "tank: shear")
     with pytest.raises(KernelError, match="name"):
         BROWNIAN.named("")
 
@@ -122,7 +122,7 @@ def test_functions_of_the_pair() -> None:
         np.testing.assert_allclose(product(v, w), SHEAR(v, w) * efficiency(v, w), rtol=1e-15)
     both = BROWNIAN * efficiency / stability
     assert pickle.loads(pickle.dumps(both)) == both
-    assert both.names == ("brownian",)
+    assert both.names == ("Brownian",)
 
 
 def test_an_infinite_stability_ratio_stops_collisions() -> None:
@@ -195,7 +195,7 @@ def test_the_refusal_names_the_pair() -> None:
 
 
 def test_a_function_that_divides_by_zero_is_refused() -> None:
-    with pytest.raises(KernelError, match=r"'brownian'.*inf"):
+    with pytest.raises(KernelError, match=r"'Brownian'.*inf"):
         (BROWNIAN / (lambda v, w: 0.0 * v * w)).part_matrices(SIZES)
 
 
@@ -236,7 +236,7 @@ def test_construction_is_checked() -> None:
 
 def test_repr_reads_as_the_formula() -> None:
     kernel = BROWNIAN / 40.0 + SHEAR * Strength.steps([1.0], [1.0, 0.0])
-    assert repr(kernel) == "Kernel(0.025 * brownian + shear * strength(time))"
+    assert repr(kernel) == "Kernel(0.025 * Brownian + shear * strength(time))"
 
 
 @pytest.mark.parametrize(

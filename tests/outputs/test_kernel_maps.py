@@ -184,6 +184,6 @@ def test_real_kernels():
     water = Medium.water(temperature=298.15, ionic_strength=60.0)
     flocs = Fractal(Particles(diameter=400e-9, density=1055.0), dimension=2.1)
     kernel = kernels.brownian(flocs, water) + kernels.shear(flocs, Flow(shear_rate=50.0))
-    assert labels(figures.dominant_mechanism_map(kernel, **RANGE))[:2] == ["brownian", "shear"]
+    assert labels(figures.dominant_mechanism_map(kernel, **RANGE))[:2] == ["Brownian", "shear"]
     ax = figures.kernel_map(kernel, **RANGE)
     ax.figure.canvas.draw()
