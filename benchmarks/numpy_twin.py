@@ -1,7 +1,8 @@
 """The fixed pivot scheme of aggsim in vectorised NumPy: what a good NumPy user would write by hand.
 
-The same births table, the same account of what passes the top, the same tolerances; integrated by
-scipy.integrate.solve_ivp. The right-hand side exists in several forms, to let the fastest one compete.
+The same births (but for the uppermost cells, where aggsim lowers the order), the same account of what passes
+the top, the same tolerances; integrated by scipy.integrate.solve_ivp. The right-hand side exists in several
+forms: `bincount` is what vectorised NumPy offers, the others lean on sparse or dense matrix products.
 """
 
 from __future__ import annotations
@@ -20,14 +21,16 @@ Rates = Callable[[float, Array], Array]
 
 def births(x: Array, moments: int) -> tuple[Any, Any, Array, Array]:
     """Pairs (i, j <= i), first target (pairs,), weights (pairs, moments), pivots continued past 2 x[-1]."""
-    ratio = max(x[-1] / x[-2], 2.0**0.125)
+    ratio = x[-1] / x[-2]
     steps = int(np.ceil(np.log(2.0) / np.log(ratio) + 1e-9)) + 1 + moments // 2
     x = np.concatenate([x, x[-1] * ratio ** np.arange(1.0, steps + 1.0)])
     i, j = np.tril_indices(x.size - steps)
     born = x[i] + x[j]
     cell = np.searchsorted(x, born * (1.0 + 4e-16), side="right") - 1
     first = np.maximum(cell - moments // 2 + 1, 0)
-    node = x[first + np.arange(moments)[:, None]]  # (moments, pairs)
+    power = 0.5 if moments == 6 else 1.0  # sixth order interpolates in the square root of the volume
+    node = x[first + np.arange(moments)[:, None]] ** power  # (moments, pairs)
+    born = born**power
     weight = np.ones((moments, born.size))
     for p in range(moments):
         for q in range(moments):

@@ -24,7 +24,7 @@ from aggsim.solvers.growth import (
 from aggsim.solvers.ladder import Ladder
 from aggsim.solvers.progress import Progress
 from aggsim.solvers.system import NotFiniteError, System, WorkLimitError
-from aggsim.vessels import Vessel
+from aggsim.vessels import Vessel, collision_rates
 
 ATOL = 1e-6  # absolute tolerance over rtol, in units of the number or volume scale of a section
 
@@ -107,6 +107,12 @@ class Run:
     def states(self) -> FloatArray:
         """Recorded states (n_times, n_sections + 2) on the grid of the result."""
         return np.array([_padded(state, self.grid) for _, state in self._rows])
+
+    def collisions(self) -> dict[str, tuple[FloatArray, FloatArray]]:
+        """Collision events [1/(m3 s)] and volume flux [1/s] of each named part, (n_times,) each."""
+        used = self._grid.sections  # recorded states hold nothing above the sections in use
+        number = self.states()[:, :used]
+        return collision_rates(self._system.terms, self._grid.volume, self.times(), number)
 
     def _use(self, grid: SizeGrid) -> None:
         self._grid = grid

@@ -162,8 +162,7 @@ def _result(run: Run, status: Status, scheme: Scheme, method: Method, rtol: floa
         beyond_grid_number=states[:, -2].copy(),
         negative_share=-np.minimum(volume, 0.0).sum(axis=1) / run.initial_volume,
     )
-    collisions = run.vessel.collisions(grid.volume, times, number)
-    contributions = Contributions({k: (c.events, c.volume_flux) for k, c in collisions.items()})
+    contributions = Contributions(run.collisions())
     stats = RunStatistics(
         rate_evaluations=run.rate_evaluations,
         jacobian_evaluations=run.jacobian_evaluations,

@@ -32,20 +32,20 @@ class System:
         self._allowed = allowed
         self._stop = math.inf
         self.jacobian_evaluations = 0
-        self._terms = vessel.terms(scheme.prepare(grid))
+        self.terms = vessel.terms(scheme.prepare(grid))
         self._active: list[tuple[Any, Callable[[float], float] | None]] = []
 
     @property
     def jumps(self) -> list[float]:
         """Times [s] at which a strength jumps, sorted."""
-        return sorted({t for term in self._terms if term.strength is not None for t in term.strength.jumps})
+        return sorted({t for term in self.terms if term.strength is not None for t in term.strength.jumps})
 
     def on(self, start: float, stop: float) -> None:
         """Use the strengths of the interval [start, stop], which holds no jump inside."""
         self._stop = stop
         self._active = [
             (term.operator, None if term.strength is None else term.strength.on(start, stop))
-            for term in self._terms
+            for term in self.terms
         ]
 
     def rates(self, time: float, state: FloatArray) -> FloatArray:

@@ -8,9 +8,11 @@ objects (a kernel is anything with `part_matrices`), so vessels know neither ker
 from __future__ import annotations
 
 from abc import ABC, abstractmethod
-from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass, field
 from typing import Any, Protocol
+
+import numpy as np
 
 from aggsim._checks import FloatArray
 
@@ -31,26 +33,15 @@ class TimeFactor(Protocol):
 
 @dataclass(frozen=True, eq=False)
 class Term:
-    """One operator of the right-hand side, times a factor in time (None: constant 1)."""
+    """One operator of the right-hand side, times a factor in time (None: constant 1).
+
+    `collisions` names the kernel matrices (n_sections, n_sections) [m3/s] that the operator is made of, where
+    it is made of collisions.
+    """
 
     operator: Any
     strength: TimeFactor | None = None
-
-
-@dataclass(frozen=True)
-class Collisions:
-    """Collisions of one named part of a kernel, at each of the times asked for.
-
-    Attributes
-    ----------
-    events : (n_times,) 1/(m3 s)
-        Collision events per volume of suspension and time.
-    volume_flux : (n_times,) 1/s
-        Volume of the particles that collide, per volume of suspension and time.
-    """
-
-    events: FloatArray
-    volume_flux: FloatArray
+    collisions: Mapping[str, FloatArray] = field(default_factory=dict)
 
 
 class Process(Protocol):
@@ -58,9 +49,6 @@ class Process(Protocol):
 
     def terms(self, prepared: Any) -> Sequence[Term]:
         """The terms of the process on a prepared scheme."""
-
-    def collisions(self, volume: FloatArray, times: FloatArray, number: FloatArray) -> dict[str, Collisions]:
-        """Collisions by named part, for numbers (n_times, n_sections) at pivots `volume`."""
 
 
 class Vessel(ABC):
@@ -75,9 +63,22 @@ class Vessel(ABC):
         """All terms on a prepared scheme."""
         return [term for process in self.processes for term in process.terms(prepared)]
 
-    def collisions(self, volume: FloatArray, times: FloatArray, number: FloatArray) -> dict[str, Collisions]:
-        """Collisions by named part of every process."""
-        out: dict[str, Collisions] = {}
-        for process in self.processes:
-            out.update(process.collisions(volume, times, number))
-        return out
+
+def collision_rates(
+    terms: Sequence[Term], volume: FloatArray, times: FloatArray, number: FloatArray
+) -> dict[str, tuple[FloatArray, FloatArray]]:
+    """Collision events [1/(m3 s)] and volume of the colliding particles [1/s], (n_times,) each, by named part.
+
+    For numbers (n_times, n_sections) [1/m3] at the pivots `volume` (n_sections,) [m3]. Negative numbers of
+    round-off size count as zero here: times a steep kernel they would be collisions.
+    """
+    number = np.maximum(number, 0.0)
+    weighted = number * volume
+    out = {}
+    for term in terms:
+        factor = 1.0 if term.strength is None else np.array([term.strength(t) for t in times])
+        for name, matrix in term.collisions.items():
+            met = number @ matrix
+            events = 0.5 * factor * np.einsum("tk,tk->t", met, number)
+            out[name] = (events, factor * np.einsum("tk,tk->t", met, weighted))
+    return out

@@ -175,18 +175,18 @@ def test_formulas_give_the_printed_figures(problem: closed.ClosedSolution, row: 
 
 @pytest.mark.parametrize("problem", closed.DISCRETE, ids=lambda p: p.name)
 def test_runs_give_the_printed_numbers_and_moments(problem: closed.ClosedSolution) -> None:
-    """Six moments, all sizes up to 23 on pivots, rtol = 1e-10: errors in time alone, see the laws of these runs.
-    What is rarer than 1e-7 N0 carries the absolute tolerance, a few hundred times 1e-16 N0."""
+    """Six moments, sizes up to 23 on pivots, 16 sections per doubling: errors in time for n_k, M0 and M2, and of
+    h^6 = 7e-9 for M3. Rare sizes carry what is lost when more sections are taken into use, 1e-12 N0 at most."""
     table, to_time, _, orders = TABLES[problem]
     times = np.array([row[0] for row in table]) * to_time
     grid = ag.SizeGrid.monomers_then_geometric(1.0, 1e6, per_doubling=16)
     result = ag.simulate(ag.Batch(problem.kernel), problem.start, times, grid=grid, rtol=1e-10)
     for i, (_, numbers, moments) in enumerate(table):
         got = result.number[i, SIZES.astype(int) - 1]
-        np.testing.assert_allclose(got, [float(n) for n in numbers], rtol=1e-8, atol=1e-14)
+        np.testing.assert_allclose(got, [float(n) for n in numbers], rtol=1e-8, atol=1e-12)
         for k, printed in zip(orders, moments, strict=True):
-            digits = len(Decimal(printed).as_tuple().digits)
-            tolerance = 1e-8 if digits >= 9 or float(printed) < 1e3 else 1e-7  # 472058.2
+            # the last M3 of the sum kernel, 472058.2, is printed to 1e-7
+            tolerance = 1e-8 if k < 3 else 1e-7 if printed == "472058.2" else 2e-8
             assert result.moment(k)[i] == pytest.approx(float(printed), rel=tolerance)
 
 
@@ -194,12 +194,12 @@ def test_runs_give_the_printed_numbers_and_moments(problem: closed.ClosedSolutio
 def test_runs_give_the_printed_moments_of_exponential_starts(problem: closed.ClosedSolution) -> None:
     table, to_time, _, orders = TABLES[problem]
     times = np.array([row[0] for row in table]) * to_time
-    grid = ag.SizeGrid.geometric(smallest=1e-6, largest=1e6, per_doubling=6)
+    grid = ag.SizeGrid.geometric(smallest=1e-5, largest=3e5, per_doubling=16)
     result = ag.simulate(ag.Batch(problem.kernel), problem.start, times, grid=grid, rtol=1e-10)
     for i, (_, _, moments) in enumerate(table):
         for k, printed in zip(orders, moments, strict=True):
-            # 1e-8 as for the discrete starts; 3.33333333 and 1904439.0 are printed to 1e-9 and 3e-8
-            assert result.moment(k)[i] == pytest.approx(float(printed), rel=5e-8)
+            # as for the discrete starts; 1904439.0 is printed to 3e-8
+            assert result.moment(k)[i] == pytest.approx(float(printed), rel=1e-8 if k < 3 else 5e-8)
 
 
 @pytest.mark.parametrize(

@@ -14,7 +14,11 @@ from aggsim.errors import InputError
 Array = np.ndarray
 
 ORDERS = [2, 4, 6]
-KEPT = {2: [0, 1], 4: [0, 1, 2, 3], 6: [0, 0.5, 1, 1.5, 2, 2.5]}  # orders in v of the moments that births keep
+KEPT = {
+    2: [0, 1],
+    4: [0, 1, 2, 3],
+    6: [0, 0.5, 1, 1.5, 2, 2.5],
+}  # orders in v of the moments that births keep
 GRIDS = {
     "1 per doubling": ag.SizeGrid.geometric(smallest=1.0, largest=2.0**14, per_doubling=1),
     "3 per doubling": ag.SizeGrid.geometric(smallest=1.0, largest=2.0**10, per_doubling=3),

@@ -1,7 +1,6 @@
 from __future__ import annotations
 
 import numpy as np
-import pytest
 
 import aggsim as ag
 from aggsim.schemes import FixedPivot
@@ -15,6 +14,7 @@ def test_parts_that_share_a_factor_in_time_share_an_operator() -> None:
     kernel = ag.kernels.constant(1.0) * pulse + ag.kernels.additive(1.0) * pulse + ag.kernels.constant(0.5)
     terms = Aggregation(kernel).terms(FixedPivot(2).prepare(GRID))
     assert [term.strength is None for term in terms] == [False, True]
+    assert [list(term.collisions) for term in terms] == [["constant", "additive"], ["constant 2"]]
 
 
 def test_terms_of_a_sum_are_the_sum_of_the_terms() -> None:
@@ -30,18 +30,3 @@ def test_terms_of_a_sum_are_the_sum_of_the_terms() -> None:
 
     total = rates(a + b)
     np.testing.assert_allclose(total, rates(a) + rates(b), rtol=1e-12, atol=1e-12 * np.abs(total).max())
-
-
-def test_collisions_count_each_pair_once() -> None:
-    number = np.array([[2.0, 1.0] + [0.0] * (len(GRID) - 2)])
-    found = Aggregation(ag.kernels.constant(3.0)).collisions(GRID.volume, np.array([0.0]), number)["constant"]
-    assert found.events[0] == pytest.approx(0.5 * 3.0 * (2.0 + 1.0) ** 2)
-    # every particle meets with rate 3 * 3 per time and brings its own volume
-    assert found.volume_flux[0] == pytest.approx(3.0 * 3.0 * (number[0] @ GRID.volume))
-
-
-def test_collisions_follow_the_strength() -> None:
-    kernel = ag.kernels.constant(1.0) * ag.kernels.Strength.steps([1.0], [1.0, 2.0])
-    number = np.ones((2, len(GRID)))
-    found = Aggregation(kernel).collisions(GRID.volume, np.array([0.5, 1.5]), number)["constant"]
-    assert found.events[1] == pytest.approx(2.0 * found.events[0])
