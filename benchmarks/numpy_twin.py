@@ -157,11 +157,15 @@ def run(
     time: float,
     form: str = "bincount",
     rtol: float = 1e-6,
+    start: Array | None = None,
 ) -> tuple[Array, int]:
-    """Numbers (n_sections,) at `time` from one particle per volume in the first section, and evaluations."""
+    """Numbers (n_sections,) at `time`, and evaluations; without `start`, from one particle per volume at x[0]."""
     rates = FORMS[form](x, kernel, moments)
-    start = np.zeros(x.size + 2)
-    start[0] = 1.0
-    atol = 1e-6 * rtol * np.concatenate([np.minimum(1.0, 1.0 / (x / x[0])), [1.0, x[0]]])
-    solution = solve_ivp(rates, (0.0, time), start, method="LSODA", rtol=rtol, atol=atol)
+    state = np.zeros(x.size + 2)
+    state[0] = 1.0
+    if start is not None:
+        state[: x.size] = start
+    number, volume = state.sum(), state[: x.size] @ x
+    atol = 1e-6 * rtol * np.concatenate([np.minimum(number, volume / x), [number, volume]])
+    solution = solve_ivp(rates, (0.0, time), state, method="LSODA", rtol=rtol, atol=atol)
     return solution.y[: x.size, -1], int(solution.nfev)
