@@ -30,7 +30,8 @@ _CELL = 0.5  # cells of half a scale of the law in ln v: 12 nodes are exact to r
 def nodes(edges: FloatArray, log_width: float) -> tuple[FloatArray, FloatArray]:
     """Return Gauss-Legendre nodes in ln v (volumes) and their weights dv for the cells between `edges`."""
     cuts = np.log(edges)
-    pieces = np.ceil(np.diff(cuts) / (_CELL * min(log_width, 1.0))).astype(np.intp)
+    # two edges that differ by round-off have the same logarithm and still make a cell
+    pieces = np.maximum(np.ceil(np.diff(cuts) / (_CELL * min(log_width, 1.0))), 1.0).astype(np.intp)
     half = np.repeat(0.5 * np.diff(cuts) / pieces, pieces)
     order = np.arange(half.size) - np.repeat(np.cumsum(pieces) - pieces, pieces)
     centre = np.repeat(cuts[:-1], pieces) + (2 * order + 1) * half

@@ -120,16 +120,15 @@ def _nearest_positive(wanted: FloatArray, linear: FloatArray, x: FloatArray, mom
         return np.maximum(wanted, 0.0)
     used = np.flatnonzero(linear > 1e-16 * linear.max())
     scale = linear[used]
-    powers = np.arange(min(moments, used.size))[:, None]
     mean = float(linear @ x) / float(linear.sum())
-    rows = (x[used] / mean) ** powers
-    size = rows @ scale
-    rows = rows * scale / size[:, None]
+    powers = (x / mean) ** np.arange(min(moments, used.size))[:, None]
+    size = powers @ linear
+    rows = powers[:, used] * scale / size[:, None]
     # how far a number may move counts little beside the moments, and by its share of number and volume
     stiffness = 1e-5 * np.sqrt(scale / scale.sum() + scale * x[used] / (scale @ x[used]))
     matrix = np.vstack([rows, np.diag(stiffness)])
-    ratio = wanted[used] / scale
-    solution, _ = nnls(matrix, np.concatenate([rows @ ratio, stiffness * ratio]))
+    aim = np.concatenate([powers @ wanted / size, stiffness * wanted[used] / scale])
+    solution, _ = nnls(matrix, aim)
     out = np.zeros(x.size)
     out[used] = solution * scale
     return out

@@ -140,6 +140,7 @@ class Run:
         """Integrate over one stretch without jumps; None when its end is reached."""
         stepper = self._begin(start, stop)
         outputs = self.outputs.tolist()
+        enough = min(TOP_SHARE, self.rtol)
         next_output = bisect_right(outputs, self._time)
         while self._time < stop:
             failure = stepper.step(min(outputs[next_output], stop))
@@ -148,8 +149,8 @@ class Run:
                 return self._gelled(AT_THE_END) or stalled
             self.steps += 1
             top, beyond, doubled = self._watch.look(stepper.state)
-            longer = self.ladder.next(self._grid) if top > TOP_SHARE else None
-            if longer is not None and abs(beyond - self._beyond) > LOST_SHARE:
+            longer = self.ladder.next(self._grid) if top > enough else None
+            if longer is not None and abs(beyond - self._beyond) > LOST_SHARE * enough:
                 # too much has passed the top to be let go: take the step again on more sections
                 stepper = self._climb(longer, start, stop)
                 continue

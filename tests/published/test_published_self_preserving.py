@@ -122,7 +122,7 @@ def test_reduced_distribution_of_coalescing_spheres(monodisperse: bool) -> None:
     expected = np.array(list(PSI.values()))
     error = np.abs(psi(late(SPHERES, monodisperse), eta) / expected - 1.0)
     # ln psi falls like -1.03 eta, so that its error grows like a power of eta, here (1 + eta)^2 to be simple
-    assert (error <= 2e-6 * (1.0 + eta / 2.0) ** 2).all()
+    assert (error <= 3e-6 * (1.0 + eta / 2.0) ** 2).all()
 
 
 def test_fractal_aggregates() -> None:
@@ -140,7 +140,7 @@ def test_fractal_aggregates() -> None:
     assert volume**3 == pytest.approx(2.19555465, rel=3e-7)
     eta = np.array(list(PSI_FRACTAL))
     error = np.abs(psi(result, eta) / np.array(list(PSI_FRACTAL.values())) - 1.0)
-    assert (error <= 2e-6 * (1.0 + eta / 2.0) ** 2).all()
+    assert (error <= 3e-6 * (1.0 + eta / 2.0) ** 2).all()
 
 
 def first_within(width: Array, times: Array, final: float, share: float) -> float:

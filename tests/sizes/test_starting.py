@@ -57,7 +57,7 @@ def every(laws):
 def wide_edges(law, cells=80):
     """Cells that reach beyond all that matters for moments up to 5."""
     low, high = law.limits(1e-16)
-    return np.geomspace(low * 1e-4, high * 1e4, cells + 1)
+    return np.geomspace(low * 1e-4, high * 1e12, cells + 1)
 
 
 # ---- closed forms
