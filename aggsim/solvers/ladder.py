@@ -14,9 +14,7 @@ from aggsim.errors import GridError
 from aggsim.schemes import Scheme
 from aggsim.sizes import SizeGrid
 
-NEAR = (
-    16.0  # doublings of volume above the largest particle within which the top is near enough to begin with
-)
+NEAR = 8.0  # doublings from the largest particle to a top that is near enough to begin with
 ROOM = 4.0  # doublings to begin with where the top is farther away
 CLIMB = 5.0  # doublings of volume that one climb adds
 UNSEEN = 1e-12  # share of the volume at the start that may wait in the uppermost section in use

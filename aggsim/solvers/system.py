@@ -30,7 +30,7 @@ class System:
         self.size = grid.sections + BEYOND
         self.rate_evaluations = 0
         self._allowed = allowed
-        self._stop = math.inf
+        self._stop = math.inf  # a method may look past the end of a stretch, a strength may not
         self.jacobian_evaluations = 0
         self.terms = vessel.terms(scheme.prepare(grid))
         self._active: list[tuple[Any, Callable[[float], float] | None]] = []
@@ -56,7 +56,8 @@ class System:
         out = np.zeros(self.size)
         total = 0.0
         for operator, strength in self._active:
-            total = operator.add_rates(state, self._factor(strength, time), out)
+            factor = 1.0 if strength is None else strength(min(time, self._stop))
+            total = operator.add_rates(state, factor, out)
         if total - total != 0.0:  # infinite or not a number; quicker than a call
             raise NotFiniteError(f"a rate of change was not finite at t = {time:.6g} s")
         return out
@@ -66,9 +67,6 @@ class System:
         self.jacobian_evaluations += 1
         out = np.zeros((self.size, self.size))
         for operator, strength in self._active:
-            operator.add_jacobian(state, self._factor(strength, time), out)
+            factor = 1.0 if strength is None else strength(min(time, self._stop))
+            operator.add_jacobian(state, factor, out)
         return out
-
-    def _factor(self, strength: Callable[[float], float] | None, time: float) -> float:
-        # a method may look past the end of a stretch, a strength may not
-        return 1.0 if strength is None else strength(min(time, self._stop))
