@@ -3,7 +3,7 @@
 A new method is one class with these duties:
 
 1. Be a frozen dataclass of options with a `max_evaluations` field and a one-word `name`.
-2. `stepper(...)` returns an object that advances a little at a time, so that output, progress, limits and
+2. `stepper(problem)` returns an object that advances a little at a time, so that output, progress, limits and
    interruption stay in one loop outside the method.
 3. `step(until)` never reports a time past `until`. Where the method has gone further inside, the state at
    `until` is interpolated without loss of order.
@@ -24,6 +24,32 @@ from aggsim import _checks
 from aggsim._checks import FloatArray
 
 Rates = Callable[[float, FloatArray], FloatArray]
+
+
+@dataclass(frozen=True, eq=False)
+class Problem:
+    """An initial value problem over one stretch of time without jumps.
+
+    Attributes
+    ----------
+    rates, jacobian : callable
+        (time [s], state (n,)) -> rates of change (n,) and their exact Jacobian (n, n).
+    start, stop : float
+        Times [s].
+    state : (n,)
+        State at `start`.
+    rtol : float
+    atol : (n,)
+        Tolerances of each step.
+    """
+
+    rates: Rates
+    jacobian: Rates
+    start: float
+    state: FloatArray
+    stop: float
+    rtol: float
+    atol: FloatArray
 
 
 class Stepper(Protocol):
@@ -71,14 +97,5 @@ class Method(ABC):
         return nullcontext()
 
     @abstractmethod
-    def stepper(
-        self,
-        rates: Rates,
-        jacobian: Rates,
-        start: float,
-        state: FloatArray,
-        stop: float,
-        rtol: float,
-        atol: FloatArray,
-    ) -> Stepper:
-        """Begin to integrate from `start` to `stop` [s]."""
+    def stepper(self, problem: Problem) -> Stepper:
+        """Begin to integrate a problem."""

@@ -11,7 +11,7 @@ from aggsim._checks import FloatArray
 from aggsim.result import Outcome, Status
 from aggsim.schemes import Scheme
 from aggsim.sizes import SizeGrid
-from aggsim.solvers.base import Method, Stepper
+from aggsim.solvers.base import Method, Problem, Stepper
 from aggsim.solvers.growth import (
     AT_THE_END,
     BEYOND_SHARE,
@@ -126,15 +126,9 @@ class Run:
     def _begin(self, start: float, stop: float) -> Stepper:
         self.restarts += 1
         self._system.on(start, stop)
-        return self.method.stepper(
-            self._system.rates,
-            self._system.jacobian,
-            self._time,
-            self._state,
-            stop,
-            self.rtol,
-            self._atol,
-        )
+        system = self._system
+        problem = Problem(system.rates, system.jacobian, self._time, self._state, stop, self.rtol, self._atol)
+        return self.method.stepper(problem)
 
     def _segment(self, start: float, stop: float) -> Status | None:
         """Integrate over one stretch without jumps; None when its end is reached."""

@@ -6,15 +6,15 @@ import numpy as np
 import pytest
 
 import aggsim as ag
-from aggsim.solvers.base import Method
+from aggsim.solvers.base import Method, Problem
 
 
 class EulerStepper:
     """Explicit Euler with a fixed number of steps: the shortest stepper there is."""
 
-    def __init__(self, rates, start, state, stop) -> None:  # type: ignore[no-untyped-def]
-        self._rates, self.time, self.state = rates, start, state
-        self._size = (stop - start) / 2000
+    def __init__(self, problem: Problem) -> None:
+        self._rates, self.time, self.state = problem.rates, problem.start, problem.state
+        self._size = (problem.stop - problem.start) / 2000
 
     def step(self, until: float) -> str | None:
         end = min(self.time + self._size, until)
@@ -27,8 +27,8 @@ class EulerStepper:
 class Euler(Method):
     """A method of a user's own."""
 
-    def stepper(self, rates, jacobian, start, state, stop, rtol, atol):  # type: ignore[no-untyped-def]
-        return EulerStepper(rates, start, state, stop)
+    def stepper(self, problem: Problem) -> EulerStepper:
+        return EulerStepper(problem)
 
 
 def test_a_method_of_ones_own_is_one_small_class() -> None:
