@@ -18,6 +18,7 @@ SOURCES = sorted(PACKAGE.rglob("*.py"))
 # room -> rooms of aggsim that it may import (errors and _checks are open to all)
 ROOMS = {
     "inputs": set(),
+    "interaction": {"inputs"},
     "sizes": set(),
     "kernels": {"inputs"},
     "schemes": {"sizes"},
@@ -25,10 +26,12 @@ ROOMS = {
     "result": {"sizes"},
     "solvers": {"sizes", "schemes", "vessels", "result"},
     "outputs": {"sizes", "result"},
+    "studies": {"inputs", "interaction", "kernels", "sizes", "vessels", "result", "solvers"},
 }
 # room -> libraries from outside
 LIBRARIES = {
     "inputs": {"numpy", "scipy"},
+    "interaction": {"numpy", "scipy"},
     "sizes": {"numpy", "scipy"},
     "kernels": {"numpy", "scipy"},
     "schemes": {"numpy", "scipy", "numba"},
@@ -36,6 +39,7 @@ LIBRARIES = {
     "result": {"numpy", "scipy"},
     "solvers": {"numpy", "scipy"},
     "outputs": {"numpy", "matplotlib"},
+    "studies": {"numpy", "scipy"},
 }
 OPEN_TO_ALL = {"errors", "_checks"}
 STANDARD = set(__import__("sys").stdlib_module_names)

@@ -8,6 +8,8 @@ from aggsim.kernels.base import PartMatrix as PartMatrix
 from aggsim.kernels.base import from_function as from_function
 from aggsim.kernels.brownian import brownian as brownian
 from aggsim.kernels.brownian import brownian_in_gas as brownian_in_gas
+from aggsim.kernels.efficiency import ShearEfficiency as ShearEfficiency
+from aggsim.kernels.efficiency import shear_efficiency as shear_efficiency
 from aggsim.kernels.ideal import additive as additive
 from aggsim.kernels.ideal import constant as constant
 from aggsim.kernels.ideal import multiplicative as multiplicative

@@ -21,6 +21,10 @@ from aggsim._checks import FloatArray
 from aggsim.outputs import _axes, _units
 from aggsim.outputs._curves import DensityCurves, measured_classes
 from aggsim.outputs._units import Structure
+from aggsim.outputs.barrier_figures import pair_energy as pair_energy
+from aggsim.outputs.barrier_figures import shelf_life as shelf_life
+from aggsim.outputs.barrier_figures import stability_map as stability_map
+from aggsim.outputs.barrier_figures import stability_over_salt as stability_over_salt
 from aggsim.outputs.kernel_maps import dominant_mechanism_map as dominant_mechanism_map
 from aggsim.outputs.kernel_maps import kernel_map as kernel_map
 from aggsim.result import Result
