@@ -32,7 +32,7 @@ class SaltScan:
     log10_ratio : dict of (n,)
         Logarithm (base 10) of the stability ratio by model.
     critical : dict
-        Critical coagulation concentration [mol/m3] by model, None where there is none in the range.
+        Ionic strength at the critical coagulation concentration [mol/m3] by model, None where there is none.
     """
 
     ionic_strength: FloatArray
@@ -87,7 +87,8 @@ def salt_scan(
             except InputError:
                 critical[model_name(model)] = None
             else:
-                critical[model_name(model)] = found
+                # a z:z electrolyte of concentration c has the ionic strength z**2 c
+                critical[model_name(model)] = found * getattr(model, "valence", 1) ** 2
     return SaltScan(salts, ratios, critical)
 
 

@@ -9,7 +9,6 @@ from dataclasses import dataclass, replace
 from typing import Any
 
 import numpy as np
-from scipy.stats import qmc
 
 from aggsim import _checks
 from aggsim._checks import FloatArray
@@ -260,6 +259,8 @@ def _draws(ranges: Mapping[str, tuple[float, float]], seed: int) -> list[dict[st
     """Quasi-random draws from the ranges; one empty draw where there is no range."""
     if not ranges:
         return [{}]
+    from scipy.stats import qmc  # half a second of import that only this function needs
+
     points: FloatArray = qmc.Sobol(len(ranges), rng=seed).random(_SAMPLES)
     draws = []
     for point in points:

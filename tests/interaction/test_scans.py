@@ -35,6 +35,13 @@ def test_the_models_differ_by_orders_of_magnitude() -> None:
     assert charge - potential > 2.0
 
 
+def test_the_critical_salt_is_an_ionic_strength_whatever_the_valence() -> None:
+    model = LinearSuperposition(valence=2)
+    scan = salt_scan(LATEX, WATER, [10.0, 20.0], double_layers=(model,))
+    concentration = ag.critical_coagulation_concentration(LATEX, WATER, double_layer=model)
+    assert scan.critical["linear superposition"] == pytest.approx(4.0 * concentration, rel=1e-12)
+
+
 def test_a_map_holds_the_scan_as_a_row() -> None:
     found = stability_map(LATEX, WATER, [-0.03, -0.025], SALTS, double_layers=(LinearSuperposition(),))
     scan = salt_scan(LATEX, WATER, SALTS, double_layers=(LinearSuperposition(),))
