@@ -13,9 +13,8 @@ from aggsim._checks import FloatArray
 from aggsim.errors import GridError
 from aggsim.sizes import means
 
-LARGEST_GRID = (
-    20_000  # sections; a dense pair matrix of more does not fit in the memory of an ordinary machine
-)
+# sections; a dense pair matrix of more does not fit in the memory of an ordinary machine
+LARGEST_GRID = 20_000
 
 
 @dataclass(frozen=True, eq=False)

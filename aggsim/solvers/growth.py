@@ -13,9 +13,8 @@ from aggsim.sizes import SizeGrid
 # particles too few to matter: where the largest ones sweep up the small faster than they grow (settling), a
 # smaller share brings the numerical gelation forward by chasing a tail of round-off size.
 TOP_SHARE = 1e-6  # or rtol, where that is less
-LOST_SHARE = (
-    1e-3  # of that share: what may pass the top in the step after which more sections are taken into use
-)
+# Of that share, what may pass the top in the step after which more sections are taken into use
+LOST_SHARE = 1e-3
 BEYOND_SHARE = 1e-3  # share of the volume past the top at which a run that cannot be extended is judged
 REMAINING = 1e-3  # a run stops when gelation is nearer than this share of the time that led to it
 AT_THE_END = 0.1  # the like where the run must end anyway, at the top of its grid or because the method fails
