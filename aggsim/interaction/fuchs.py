@@ -18,7 +18,7 @@ EnergyFunction: TypeAlias = Callable[[FloatArray, FloatArray, FloatArray], Float
 """energy(h, first diameter, second diameter) [J], arrays in metres that broadcast."""
 
 _CONTACT, _FAR = -42.0, 3.25  # range of t: h/R from 6e-19, where only a divergent integrand is left, to 4e12
-_NEGLIGIBLE = 30.0  # parts of the integrand below exp(-30) = 1e-13 of its peak are cut off
+_NEGLIGIBLE = 26.0  # parts of the integrand below exp(-26) = 5e-12 of its peak are cut off
 _DIVERGENT = 16.0  # an integrand that is above exp(-16) of its peak at the lower end of t and does not fall
 _FIRST_INTERVALS, _MOST_INTERVALS = 64, 2**14
 _AGREEMENT = 3e-4  # between step and double step; the finer sum is then far better than this
@@ -173,14 +173,18 @@ def _log_integrand(
     weight = gap * (1.0 + stretch) / ((1.0 + gap) * (1.0 + gap))
     if hydrodynamics:
         u = gap * (2.0 * reach * reach / (first * second))  # h/a with a = 2 r1 r2/(r1 + r2)
-        weight *= ((6.0 * u + 13.0) * u + 2.0) / ((6.0 * u + 4.0) * u)
+        weight *= 1.0 + (9.0 * u + 2.0) / ((6.0 * u + 4.0) * u)
     h = gap * reach
-    f: FloatArray = np.asarray(energy(h, first, second)) / thermal_energy + np.log(weight)
-    missing = np.isnan(f.max(axis=-1))
-    if missing.any():
+    f: FloatArray = np.array(energy(h, first, second))
+    f /= thermal_energy
+    f += np.log(weight)
+    highest, lowest = float(f.max()), float(f.min())
+    if math.isnan(highest):
         where = float(h[np.isnan(f)][0])
         refuse(f"energy at h={where:.3g} m", "not a number", "an energy [J] for every h > 0")
-    return np.clip(f, -_EXTREME, _EXTREME)
+    if highest > _EXTREME or lowest < -_EXTREME:
+        np.clip(f, -_EXTREME, _EXTREME, out=f)
+    return f
 
 
 def _trapezoid(
@@ -191,17 +195,23 @@ def _trapezoid(
     Also the first and last node of the window that counts, and whether no peak can hide between the nodes.
     """
     top = f.max(axis=-1)
-    share = np.exp(f - top[:, None])
-    total = share.sum(axis=-1)
-    off = np.abs(2.0 * share[:, ::2].sum(axis=-1) / total - 1.0)
+    below = f - top[:, None]
     # a narrow peak between two nodes shows in the bend of the logarithm, which is smooth where exp is steep
     bend = np.zeros_like(f)
-    bend[:, 1:-1] = np.abs(f[:, 2:] - 2.0 * f[:, 1:-1] + f[:, :-2])
-    counts = f + bend > top[:, None] - _NEGLIGIBLE
+    inner = bend[:, 1:-1]
+    np.add(below[:, 2:], below[:, :-2], out=inner)
+    inner -= below[:, 1:-1]
+    inner -= below[:, 1:-1]
+    np.abs(inner, out=inner)
+    counts = below + bend > -_NEGLIGIBLE
+    bend *= counts
+    resolved = bend.max(axis=-1) < _RESOLVED
+    share = np.exp(below, out=below)
+    total = share.sum(axis=-1)
+    off = np.abs(2.0 * share[:, ::2].sum(axis=-1) / total - 1.0)
     last = f.shape[-1] - 1
     begin = np.maximum(counts.argmax(axis=-1) - 1, 0)
     end = np.minimum(last - counts[:, ::-1].argmax(axis=-1) + 1, last)
-    resolved = np.where(counts, bend, 0.0).max(axis=-1) < _RESOLVED
     return top + np.log(total * step), off, begin, end, resolved
 
 

@@ -45,20 +45,22 @@ def hamaker_spheres(h: ArrayLike, d1: ArrayLike, d2: ArrayLike, hamaker: ArrayLi
     .. [1] H. C. Hamaker (1937), Physica 4, 1058, DOI 10.1016/S0031-8914(37)80203-7.
     """
     gap, first, second = _lengths(h, d1, d2)
-    x = gap * (gap + first + second)
-    middle = x + 0.5 * first * second  # (x + y)/2
-    q = 0.5 * first * second / middle
-    y = x + first * second
-    # with x = (1 - q) middle and y = (1 + q) middle the bracket is 2 [q/(1 - q**2) - artanh q]
-    shape = np.asarray(0.5 * first * second / x * (middle / y) - 0.5 * np.log(y / x))
-    far = q < 0.1
+    # with r = (y - x)/x the bracket is 2 [r (1 + r/2)/(2 (1 + r)) - ln(1 + r)/2]
+    r = np.asarray(first * second / (gap * (gap + (first + second))))
+    one = 1.0 + r
+    shape = np.asarray(0.25 * r * (1.0 + 1.0 / one) - 0.5 * np.log(one))
+    far = r < 0.22
     if far.any():
-        # sum over k of 2k/(2k + 1) q**(2k + 1); the ninth term is below round-off
-        square = q[far] ** 2
+        # there the two terms cancel; with q = r/(2 + r) the bracket is 2 [q/(1 - q**2) - artanh q], the sum
+        # over k of 4k/(2k + 1) q**(2k + 1), whose ninth term is below round-off
+        q = r[far]
+        q = q / (2.0 + q)
+        square = q * q
         series = np.zeros_like(square)
         for k in range(8, 0, -1):
-            series = (series + 2.0 * k / (2.0 * k + 1.0)) * square
-        shape[far] = q[far] * series
+            series += 2.0 * k / (2.0 * k + 1.0)
+            series *= square
+        shape[far] = q * series
     return (-finite("hamaker", hamaker, "J") / 3.0 * shape)[()]
 
 
@@ -238,8 +240,9 @@ def constant_charge(
 def positive(name: str, value: ArrayLike, unit: str = "m") -> FloatArray:
     """`value` as an array of any shape, refused unless every entry is above 0 and finite."""
     out: FloatArray = np.asarray(plain(value, unit), dtype=np.float64)
-    bad = ~((out > 0.0) & (out < np.inf))
-    if bad.any():
+    # two reductions are quicker than a mask, and the mask is wanted in a refusal only
+    if out.size and not (out.min() > 0.0 and out.max() < np.inf):
+        bad = ~((out > 0.0) & (out < np.inf))
         hint = "a separation of the surfaces: 1 nm is 1e-9 m; the formulas diverge at contact"
         refuse(name, f"{out[bad].flat[0]:g} {unit}", f"finite, above 0 [{unit}]", hint if name == "h" else "")
     return out

@@ -77,10 +77,10 @@ class PairEnergy:
             If a separation or a diameter is not above 0 and finite.
         """
         gap, one, two = positive("h", h), positive("d1", d1), positive("d2", d2)
-        total = np.zeros(np.broadcast_shapes(gap.shape, one.shape, two.shape))
-        for name in self.parts:
-            total = total + self._part(name, gap, one, two)
-        return total[()]
+        parts = [self._part(name, gap, one, two) for name in self.parts]
+        if not parts:
+            return np.zeros(np.broadcast_shapes(gap.shape, one.shape, two.shape))[()]
+        return np.asarray(sum(parts[1:], start=parts[0]))[()]
 
     @cached_property
     def hamaker(self) -> float:
