@@ -19,19 +19,15 @@ class Structure(Protocol):
     @property
     def particles(self) -> Particles:
         """The primary particles."""
-        ...
 
     def collision_diameter(self, volume: ArrayLike) -> FloatArray:
         """Diameter [m] that another particle has to reach, for solid `volume` [m3]."""
-        ...
 
     def hydrodynamic_diameter(self, volume: ArrayLike) -> FloatArray:
         """Diameter [m] of the sphere with the same drag, for solid `volume` [m3]."""
-        ...
 
     def effective_density(self, volume: ArrayLike, medium_density: float) -> FloatArray:
         """Density [kg/m3] of the aggregate with its pores full of medium, for solid `volume` [m3]."""
-        ...
 
 
 @dataclass(frozen=True)

@@ -30,7 +30,6 @@ class DoubleLayer(Protocol):
         medium: Medium,
     ) -> FloatArray:
         """Energy [J] at separations `h` [m] of spheres of diameters `d1`, `d2` [m] and potentials [V]."""
-        ...
 
 
 @runtime_checkable
@@ -39,7 +38,6 @@ class VanDerWaals(Protocol):
 
     def energy(self, h: ArrayLike, d1: ArrayLike, d2: ArrayLike, hamaker: ArrayLike) -> FloatArray:
         """Energy [J] at separations `h` [m] of spheres of diameters `d1`, `d2` [m]."""
-        ...
 
 
 @runtime_checkable
@@ -48,7 +46,6 @@ class Repulsion(Protocol):
 
     def energy(self, h: ArrayLike, d1: ArrayLike, d2: ArrayLike, medium: Medium) -> FloatArray:
         """Energy [J] at separations `h` [m] of spheres of diameters `d1`, `d2` [m]."""
-        ...
 
 
 @dataclass(frozen=True, kw_only=True)

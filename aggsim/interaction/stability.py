@@ -22,7 +22,6 @@ class Carrier(Protocol):
 
     def interacting_diameter(self, structure: Structure, volume: FloatArray) -> FloatArray:
         """Diameter [m] of the sphere that carries the interaction, for solid `volume` [m3] of any shape."""
-        ...
 
 
 @dataclass(frozen=True)

@@ -23,11 +23,9 @@ class Drag(Protocol):
 
     def coefficient(self, reynolds: ArrayLike) -> FloatArray:
         """Drag coefficient [1] at Reynolds numbers [1] of any shape."""
-        ...
 
     def terminal_reynolds(self, best_number: FloatArray) -> FloatArray:
         """Reynolds number [1] at which drag balances weight, for Best numbers Cd Re**2 [1] of any shape."""
-        ...
 
 
 @dataclass(frozen=True)

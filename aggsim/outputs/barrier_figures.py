@@ -174,7 +174,7 @@ def shelf_life(life: Any, *, ax: Any = None) -> Any:
         ("all ranges and models, 5 to 95 %", life.low, life.high, _axes.COLOURS[0])
     ]
     rows += [(f"{name}, central inputs", time, time, _axes.COLOURS[1]) for name, time in life.models.items()]
-    rows += [(f"range of {_source(s.name)} alone", *s.times, "0.6") for s in life.sources]
+    rows += [(f"range of {s.label} alone", *s.times, "0.6") for s in life.sources]
     left, right = _limits([time for _, low, high, _ in rows for time in (low, high)])
     for y, (_, low, high, colour) in zip(range(len(rows))[::-1], rows, strict=True):
         ends = np.log10(np.clip([low, high], 1e-300, 1e300))
@@ -199,10 +199,6 @@ def shelf_life(life: Any, *, ax: Any = None) -> Any:
     ax.set_xlabel(f"log$_{{10}}$ of the shelf life in seconds{dashed}; arrows: beyond the frame")
     ax.spines[["top", "right"]].set_visible(False)
     return ax
-
-
-def _source(name: str) -> str:
-    return "Hamaker constant" if name == "hamaker" else name.replace("_", " ")
 
 
 def _limits(times: list[float]) -> tuple[float, float]:

@@ -58,6 +58,11 @@ class Source:
     times: tuple[float, float]
     decades: float
 
+    @property
+    def label(self) -> str:
+        """The name in words."""
+        return "Hamaker constant" if self.name == "hamaker" else self.name.replace("_", " ")
+
 
 @dataclass(frozen=True, eq=False)
 class ShelfLife:
@@ -104,12 +109,12 @@ class ShelfLife:
             return f"does not keep: {self.criterion} is expected {band}, before the {duration(self.wanted)} wanted"
         return (
             f"undecided: {self.criterion} is expected {band}; {duration(self.wanted)} wanted. "
-            f"Most is gained by knowing the {_words(self.sources[0].name)} better"
+            f"Most is gained by knowing the {self.sources[0].label} better"
         )
 
     def __str__(self) -> str:
         lines = [self.verdict]
-        lines += [f"  {_words(s.name)}: {s.decades:.1f} powers of ten over its range" for s in self.sources]
+        lines += [f"  {s.label}: {s.decades:.1f} powers of ten over its range" for s in self.sources]
         return "\n".join([*lines, CAUTION])
 
 
@@ -234,10 +239,6 @@ def duration(seconds: float) -> str:
             value = seconds / length
             return f"{value:.3g} {unit}" if value < 1e4 else f"more than 10^{int(math.log10(value))} {unit}"
     return f"{seconds:.3g} s"
-
-
-def _words(name: str) -> str:
-    return "Hamaker constant" if name == "hamaker" else name.replace("_", " ")
 
 
 def _ranges(
