@@ -28,6 +28,10 @@ class KernelError(InputError):
     """A collision kernel gives values that are not collision rates (negative, not finite, not symmetric)."""
 
 
+class BreakageError(InputError):
+    """A breakage law gives values that are not breakage rates, or fragments that do not make up their parent."""
+
+
 class TimesError(InputError):
     """The output times cannot be used."""
 

@@ -16,9 +16,14 @@ SCHEMES = [
     ag.FixedPivot(moments=4),
     ag.FixedPivot(moments=6),
     ag.Sectional(),
+    ag.CellAverage(),
+    ag.FiniteVolume(),
     ag.Monomer(),
 ]
 ON_GEOMETRIC_GRIDS = [scheme for scheme in SCHEMES if not isinstance(scheme, ag.Monomer)]
+NUMBER_KEEPING = [scheme for scheme in SCHEMES if not isinstance(scheme, ag.FiniteVolume)]
+# the cell average technique decides by the mean of all births
+LINEAR_IN_THE_KERNEL = [scheme for scheme in SCHEMES if not isinstance(scheme, ag.CellAverage)]
 
 
 def grid_for(scheme: ag.schemes.Scheme, doublings: int = 6, per_doubling: int = 3) -> ag.SizeGrid:
@@ -118,3 +123,39 @@ def discrete_equation(matrix: Array, number: Array) -> Plain:
                 plain.add(n, met, 0.5)
                 plain.add(n + 1, met, 0.5, k + j)
     return plain
+
+
+def fragment_sharing(
+    x: Array, rate: Array, parent: Array, volume: Array, count: Array, order: int
+) -> tuple[Array, Array]:
+    """Matrix (n, n) of breakage, one fragment at a time, and the sum of all events behind each entry.
+
+    A fragment is interpolated between the `order` pivots nearest to it, all of them up to its parent, in v or for 6
+    in its square root; fewer where the parent has fewer below. What is smaller than the first pivot counts there
+    by volume.
+    """
+    n = x.size
+    matrix, gross = np.zeros((n, n)), np.zeros((n, n))
+    for i, v, events in zip(parent, volume, rate[parent] * count, strict=True):
+        if v <= x[0]:
+            targets, weights = np.array([0]), np.array([v / x[0]])
+        else:
+            below = min(int(np.sum(x <= v)) - 1, i - 1)
+            nodes = min(order, i + 1)
+            first = below - nodes // 2 + 1
+            first = max(0, min(first, i + 1 - nodes))
+            targets = np.arange(first, first + nodes)
+            power = 0.5 if order == 6 and nodes > 2 else 1.0
+            at = x[targets] ** power
+            weights = np.array(
+                [np.prod((v**power - np.delete(at, p)) / (a - np.delete(at, p))) for p, a in enumerate(at)]
+            )
+        matrix[targets, i] += events * weights
+        gross[targets, i] += events * np.maximum(np.abs(weights), 1.0)
+    at = np.arange(n)
+    matrix[at, at] -= rate
+    gross[at, at] += rate
+    # the loss of a section is what makes up its fragments: what is not resolved to the last digit elsewhere
+    # is made up there
+    gross[at, at] += (gross * x[:, None]).sum(axis=0) / x
+    return matrix, gross

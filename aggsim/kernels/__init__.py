@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from aggsim.kernels.base import Kernel as Kernel
 from aggsim.kernels.base import Part as Part
+from aggsim.kernels.base import PartFunction as PartFunction
 from aggsim.kernels.base import PartMatrix as PartMatrix
 from aggsim.kernels.base import from_function as from_function
 from aggsim.kernels.brownian import brownian as brownian
@@ -15,6 +16,7 @@ from aggsim.kernels.ideal import constant as constant
 from aggsim.kernels.ideal import multiplicative as multiplicative
 from aggsim.kernels.settling import Drag as Drag
 from aggsim.kernels.settling import SchillerNaumann as SchillerNaumann
+from aggsim.kernels.settling import SettlingVelocity as SettlingVelocity
 from aggsim.kernels.settling import Stokes as Stokes
 from aggsim.kernels.settling import settling as settling
 from aggsim.kernels.settling import settling_velocity as settling_velocity

@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Callable
 from dataclasses import dataclass, replace
+from functools import partial
 from typing import Any, ClassVar, NamedTuple, TypeAlias
 
 import numpy as np
@@ -59,6 +60,14 @@ class PartMatrix(NamedTuple):
 
     name: str
     matrix: FloatArray
+    strength: Strength | None
+
+
+class PartFunction(NamedTuple):
+    """A part as `rate(v, w)` [m3/s], which includes the scale; `strength` is the factor in time."""
+
+    name: str
+    rate: PairFunction
     strength: Strength | None
 
 
@@ -130,6 +139,10 @@ class Kernel:
             factor = 1.0 if part.strength is None else part.strength(time)
             total = total + factor * _evaluate(part, first, second)
         return total[()]
+
+    def part_functions(self) -> tuple[PartFunction, ...]:
+        """Every part as a function of two arrays of volumes [m3]: scaled, checked, without the factor in time."""
+        return tuple(PartFunction(p.name, partial(_evaluate, p), p.strength) for p in self.parts)
 
     def part_matrices(self, volume: ArrayLike) -> tuple[PartMatrix, ...]:
         """Every part on all pairs of `volume` [m3], shape (n,): scaled, checked, without the factor in time.

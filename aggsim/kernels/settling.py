@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import KW_ONLY, dataclass
 from typing import Any, Protocol, runtime_checkable
 
 import numpy as np
@@ -114,6 +114,41 @@ def settling_velocity(
     v = array("volume", np.atleast_1d(np.asarray(volume)), "m3", above=0.0)
     speed = _speed(structure, medium, law, v)
     return speed[0] if np.ndim(volume) == 0 else speed
+
+
+@dataclass(frozen=True)
+class SettlingVelocity:
+    """Settling speed of single particles as a function of their solid volume alone (`settling_velocity`).
+
+    Calling it with volumes [m3] gives speeds [m/s] of the same shape, negative where particles rise.
+
+    Parameters
+    ----------
+    structure : Structure
+        Compact or Fractal.
+    medium : Medium
+    drag : Drag, optional
+        Stokes() unless given; SchillerNaumann() for particles beyond creeping flow.
+
+    Raises
+    ------
+    InputError
+        If an argument is of another kind; when called, if a volume is not positive.
+    """
+
+    structure: Structure
+    medium: Medium
+    _: KW_ONLY
+    drag: Drag | None = None
+
+    def __post_init__(self) -> None:
+        require_structure(self.structure)
+        require_medium(self.medium)
+        object.__setattr__(self, "drag", _drag_law(self.drag))
+
+    def __call__(self, volume: ArrayLike) -> FloatArray:
+        """Speed [m/s] of particles of solid `volume` [m3], a number or (n,)."""
+        return settling_velocity(self.structure, self.medium, volume, drag=self.drag)
 
 
 def settling(structure: Structure, medium: Medium, *, drag: Drag | None = None) -> Kernel:

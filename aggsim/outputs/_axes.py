@@ -43,10 +43,31 @@ def sequence(count: int) -> list[Any]:
     return list(mpl.colormaps["viridis"](np.linspace(0.0, 0.86, count) if count > 1 else [0.35]))
 
 
-def legend(ax: Any, own: bool) -> None:
-    """Legend beside the axis where the figure is ours, else where it hides least of the data."""
-    look: dict[str, Any] = {"frameon": False, "fontsize": "small"}
+def look(k: int, points: int) -> dict[str, Any]:
+    """Colour and line of curve k; markers where the points are so few that a line alone would hide them."""
+    out: dict[str, Any] = {
+        "color": COLOURS[k % len(COLOURS)],
+        "linestyle": LINES[k % len(LINES)],
+        "linewidth": 1.8,
+    }
+    if points <= FEW:
+        out |= {"marker": "o", "markersize": 4}
+    return out
+
+
+def named(label: str, texts: list[str]) -> list[str]:
+    """Names of curves in the legend, with the name of their result before them where it has one."""
+    return [f"{label}, {text}" for text in texts] if label else texts
+
+
+def legend(ax: Any, own: bool, title: str = "") -> None:
+    """Legend beside the axis where the figure is ours, else where it hides least of the data.
+
+    What the title tells holds for one result, so a legend of several has none.
+    """
+    look: dict[str, Any] = {"frameon": False, "fontsize": "small", "title_fontsize": "small"}
     if own:
+        look |= {"title": title or None, "alignment": "left"}
         ax.legend(loc="center left", bbox_to_anchor=(1.01, 0.5), borderaxespad=0.0, **look)
     else:
         ax.legend(loc="best", **look)
@@ -82,6 +103,11 @@ def log_size(axis_part: Any, low: float, high: float) -> None:
     axis_part.set_minor_formatter(NullFormatter())
 
 
+def around(lengths: FloatArray) -> tuple[float, float]:
+    """Limits of a size axis with a little room around these lengths [m]."""
+    return float(lengths.min()) / 1.1, float(lengths.max()) * 1.1
+
+
 def size_unit(axis_part: Any, lengths: FloatArray, unit: float | None) -> Unit:
     """Unit of a size axis: that of what was drawn on it before, else the one asked for, else a fitting one."""
     drawn = _drawn_unit(axis_part, LENGTHS)
@@ -90,6 +116,19 @@ def size_unit(axis_part: Any, lengths: FloatArray, unit: float | None) -> Unit:
     if unit is not None and length_unit(lengths, unit) != drawn:
         _checks.refuse("unit", f"{unit:g} m", f"the unit of what is on the axis already, {drawn.size:g} m")
     return drawn
+
+
+def size_axis(part: Any, low: float, high: float, unit: float | None, name: str) -> Unit:
+    """Make `ax.xaxis` or `ax.yaxis` a size axis that takes in `low` to `high` [m], and return its unit.
+
+    Everything that is on the axis must have been drawn by these figures; what is drawn next fits by itself.
+    """
+    scale = size_unit(part, np.array([low, high]), unit)
+    low, high = widen(part, low / scale.size, high / scale.size)
+    part.axes.set(**{f"{part.axis_name}scale": "log", f"{part.axis_name}lim": (low, high)})
+    log_size(part, low, high)
+    part.set_label_text(f"{name} [{scale.glyph}]")
+    return scale
 
 
 def widen(axis_part: Any, low: float, high: float) -> tuple[float, float]:

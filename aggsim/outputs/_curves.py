@@ -1,4 +1,4 @@
-"""Curves of the density q_r* of a result, and measured classes to set beside them."""
+"""Curves of the density q_r* of several states, and measured classes to set beside them."""
 
 from __future__ import annotations
 
@@ -11,18 +11,18 @@ from aggsim import _checks
 from aggsim._checks import FloatArray
 from aggsim.errors import DistributionError
 from aggsim.outputs._units import Structure, shown_diameter
-from aggsim.result import Result
-from aggsim.sizes import Measured, means
+from aggsim.sizes import Measured, SizeGrid, means
 
 _LONE = 0.99  # share in one section from which a density has no meaningful height
 _SHOWN = 3e-3  # of the peak; the size axis covers all sections above it
 _SUM = 0.02  # how far measured shares may miss the sum 1 by rounding and by sizes outside the instrument
+_ROOM = 1.06  # height of the axis over that of the highest curve
 _FINE = 8  # points per section
 
 
 @dataclass(frozen=True)
 class DensityCurves:
-    """Densities q_r* at the pivots, for chosen output times.
+    """Densities q_r* at the pivots of several states.
 
     `sphere`, `shown` (n,): volume-equivalent diameter and that on the axis [m]; `share`, `density` (rows, n).
     """
@@ -33,9 +33,8 @@ class DensityCurves:
     density: FloatArray
 
     @classmethod
-    def of(cls, result: Result, rows: list[int], r: float, structure: Structure | None) -> DensityCurves:
-        grid = result.grid
-        density = means.density(grid.volume, result.number[rows], r)
+    def of(cls, grid: SizeGrid, number: FloatArray, r: float, structure: Structure | None) -> DensityCurves:
+        density = means.density(grid.volume, number, r)
         share = density * grid.width / (3.0 * grid.volume)
         shown = shown_diameter(grid.volume, grid.diameter, structure)
         sphere_limits = means.diameter_of(grid.limits)
@@ -55,6 +54,20 @@ class DensityCurves:
         log_x, curve = _akima(np.log(self.shown), q)
         return np.exp(np.append(log_x[:1], log_x)), np.append(0.0, curve)
 
+    def draw(self, ax: Any, unit: float, looks: list[dict[str, Any]], r: float) -> None:
+        """Draw each row on a size axis in `unit` [m], upright where one size holds it, and set up the other axis."""
+        top = max(ax.get_ylim()[1] / _ROOM, 0.0) if ax.has_data() else 0.0
+        for row, look in enumerate(looks):
+            lone = self.lone(row)
+            if lone is not None:
+                ax.axvline(lone / unit, **look | {"label": f"{look['label']} (one size)"})
+                continue
+            x, q = self.line(row)
+            ax.plot(x / unit, q, **look)
+            top = max(top, float(q.max()))
+        ax.set_ylim(0.0, _ROOM * top if top > 0.0 else 1.0)
+        ax.set_ylabel(rf"density $q_{{{r:g}}}^* = \mathrm{{d}}Q_{{{r:g}}}\,/\,\mathrm{{d}}\,\ln x$  [-]")
+
     def visible(self) -> tuple[float, float]:
         """Range of diameters on the axis [m] in which any row is worth seeing."""
         first, last = self._visible()
@@ -69,6 +82,13 @@ class DensityCurves:
         worth = (self.density > _SHOWN * self.density.max(axis=-1, keepdims=True)).any(axis=0)
         where = np.flatnonzero(worth)
         return max(int(where[0]) - 1, 0), min(int(where[-1]) + 1, self.shown.size - 1)
+
+
+def draw_classes(ax: Any, unit: float, edges: FloatArray, shares: FloatArray) -> None:
+    """Draw measured shares between class limits [m] as stairs of density on an axis that was set up."""
+    q = shares / np.diff(np.log(edges))
+    ax.stairs(q, edges / unit, color="black", linewidth=1.2, label="measured")
+    ax.set_ylim(0.0, max(ax.get_ylim()[1], _ROOM * float(q.max())))
 
 
 def measured_classes(measured: Any, r: float) -> tuple[FloatArray, FloatArray]:

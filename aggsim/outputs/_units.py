@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import Any, NamedTuple, Protocol
+from typing import Any, NamedTuple, NoReturn, Protocol
 
 import numpy as np
 
@@ -96,18 +96,39 @@ def chosen_times(result: Result, times: Any, at_most: int) -> list[int]:
         return evenly(known.size, at_most)
     raw = _checks.plain(times, "s")
     wanted = _checks.array("times", [raw] if np.ndim(raw) == 0 else raw, "s", error=TimesError)
+    for k, time in enumerate(wanted.tolist()):
+        _require_inside(f"times[{k}]", time, known)
+    return sorted(set(np.abs(known[:, None] - wanted).argmin(axis=0).tolist()))
+
+
+def chosen_time(result: Result, time: float | None) -> int:
+    """Index of the output time nearest to `time` [s], the last without it.
+
+    Raises TimesError for a time before the first or after the last output.
+    """
+    known = result.times
+    if time is None:
+        return known.size - 1
+    wanted = _checks.scalar("time", time, "s", error=TimesError)
+    _require_inside("time", wanted, known)
+    return int(np.abs(known - wanted).argmin())
+
+
+def _require_inside(name: str, time: float, known: FloatArray) -> None:
     slack = 1e-9 * float(known[-1])
-    outside = (wanted < known[0] - slack) | (wanted > known[-1] + slack)
-    if outside.any():
-        where = int(np.flatnonzero(outside)[0])
+    if not known[0] - slack <= time <= known[-1] + slack:
         _checks.refuse(
-            f"times[{where}]",
-            f"{wanted[where]:g} s",
+            name,
+            f"{time:g} s",
             f"from the first to the last output time, {known[0]:g} to {known[-1]:g} s",
-            "times in seconds; the output nearest to each is shown",
+            "a time in seconds; the output nearest to it is shown",
             error=TimesError,
         )
-    return sorted(set(np.abs(known[:, None] - wanted).argmin(axis=0).tolist()))
+
+
+def refuse_time(name: str, value: Any) -> NoReturn:
+    """Refuse a time for a state that has none."""
+    _checks.refuse(name, repr(value), "None, since a steady state has no times", error=TimesError)
 
 
 def quantity(r: float) -> float:
@@ -128,3 +149,8 @@ def shown_diameter(volume: FloatArray, sphere: FloatArray, structure: Structure 
             "Fractal(particles, dimension=2.1)",
         )
     return outer
+
+
+def kind_of_diameter(structure: Structure | None) -> str:
+    """What the diameter on an axis is called."""
+    return "volume-equivalent diameter" if structure is None else "outer diameter"

@@ -1,7 +1,9 @@
 """Results in one file each, restored bit for bit.
 
 The file is a numpy .npz archive: the arrays under the names below, and `header`, a JSON text as UTF-8 bytes,
-with everything that is not an array. Nothing in it is executed when it is read.
+with everything that is not an array. Nothing in it is executed when it is read. Names of streams and of kernel
+parts stand in the header, their arrays under a number. A tank of a train is a result of its own, with `tank_0_`
+and so on before the names of its arrays. Version 1 knew neither streams nor tanks.
 """
 
 from __future__ import annotations
@@ -21,9 +23,10 @@ from aggsim.result import Balance, Contributions, Outcome, Result, RunStatistics
 from aggsim.sizes import SizeGrid
 
 FORMAT = "aggsim result"
-FORMAT_VERSION = 1  # raised whenever an older release could not read, or would misread, what is written
+FORMAT_VERSION = 2  # raised whenever an older release could not read, or would misread, what is written
 
 _BALANCE = ("present", "beyond_grid", "beyond_grid_number", "negative_share")
+_WAYS = ("inward", "outward")
 
 
 def save(result: Result, path: str | os.PathLike[str]) -> None:
@@ -44,31 +47,16 @@ def save(result: Result, path: str | os.PathLike[str]) -> None:
     """
     if not isinstance(result, Result):
         raise ArchiveError(f"result={result!r} is not a Result. Try: save(simulate(...), path).")
-    status, stats, grid, balance = result.status, result.stats, result.grid, result.balance
+    header, arrays = _parts(result)
     header = {
         "format": FORMAT,
         "format_version": FORMAT_VERSION,
         "aggsim_version": package_version(),
-        "grid": {"ratio": _float(grid.ratio), "monomer": _float(grid.monomer)},
-        "balance": {"initial": float(balance.initial)},
-        "contributions": list(result.contributions),
-        "status": {
-            "outcome": status.outcome.name,
-            "time": float(status.time),
-            "detail": status.detail,
-            "gelation_time": _float(status.gelation_time),
-        },
-        "stats": {k: float(v) if k == "seconds" else int(v) for k, v in asdict(stats).items()},
-        "settings": {str(k): str(v) for k, v in result.settings.items()},
+        **header,
     }
-    arrays = {"times": result.times, "grid_volume": grid.volume, "number": result.number}
-    arrays |= {f"balance_{name}": getattr(balance, name) for name in _BALANCE}
-    for k, part in enumerate(result.contributions.values()):
-        arrays |= {f"events_{k}": part.events, f"volume_flux_{k}": part.volume_flux}
     text = np.frombuffer(json.dumps(header, indent=1).encode(), dtype=np.uint8)
     buffer = io.BytesIO()
-    content: dict[str, Any] = {name: np.asarray(array, np.float64) for name, array in arrays.items()}
-    np.savez_compressed(buffer, header=text, **content)
+    np.savez_compressed(buffer, header=text, **arrays)
     write_atomically(path, buffer.getvalue())
 
 
@@ -98,12 +86,47 @@ def load(path: str | os.PathLike[str]) -> Result:
     arrays = _arrays(content, name)
     header = _header(arrays, name)
     try:
-        return _result(header, arrays)
+        return _result(_current(header), arrays)
     except (KeyError, TypeError, ValueError, AggsimError) as problem:
         raise ArchiveError(
             f"{name} is a saved aggsim result, but damaged ({_cause(problem)}). "
             "Try: a copy of the file, or run the simulation again."
         ) from problem
+
+
+def _parts(result: Result) -> tuple[dict[str, Any], dict[str, Any]]:
+    """Header and arrays of a result, its tanks included."""
+    status, stats, grid, balance = result.status, result.stats, result.grid, result.balance
+    header: dict[str, Any] = {
+        "grid": {"ratio": _float(grid.ratio), "monomer": _float(grid.monomer)},
+        "balance": {
+            "initial": float(balance.initial),
+            "inward": list(balance.inward),
+            "outward": list(balance.outward),
+        },
+        "contributions": list(result.contributions),
+        "status": {
+            "outcome": status.outcome.name,
+            "time": float(status.time),
+            "detail": status.detail,
+            "gelation_time": _float(status.gelation_time),
+        },
+        "stats": {k: float(v) if k == "seconds" else int(v) for k, v in asdict(stats).items()},
+        "settings": {str(k): str(v) for k, v in result.settings.items()},
+        "tanks": [],
+    }
+    arrays = {"times": result.times, "grid_volume": grid.volume, "number": result.number}
+    arrays |= {f"balance_{name}": getattr(balance, name) for name in _BALANCE}
+    for way in _WAYS:
+        arrays |= {f"{way}_{k}": volume for k, volume in enumerate(getattr(balance, way).values())}
+    for k, part in enumerate(result.contributions.values()):
+        arrays |= {f"events_{k}": part.events, f"volume_flux_{k}": part.volume_flux}
+    content: dict[str, Any] = {name: np.asarray(array, np.float64) for name, array in arrays.items()}
+    for k, tank in enumerate(result.tanks):
+        tank_header, tank_arrays = _parts(tank)
+        header["tanks"].append(tank_header)
+        content |= {f"tank_{k}_{name}": array for name, array in tank_arrays.items()}
+    return header, content
 
 
 def _arrays(content: bytes, name: str) -> dict[str, Any]:
@@ -147,27 +170,44 @@ def _header(arrays: dict[str, Any], name: str) -> dict[str, Any]:
     return header
 
 
-def _result(header: dict[str, Any], arrays: dict[str, Any]) -> Result:
-    times, number = arrays["times"], arrays["number"]
-    grid = SizeGrid(arrays["grid_volume"], **header["grid"])
-    balance = {name: arrays[f"balance_{name}"] for name in _BALANCE}
+def _current(header: dict[str, Any]) -> dict[str, Any]:
+    """The header as this format version writes it."""
+    if header["format_version"] == 1:
+        return header | {"tanks": [], "balance": header["balance"] | {way: [] for way in _WAYS}}
+    return header
+
+
+def _result(header: dict[str, Any], arrays: dict[str, Any], prefix: str = "") -> Result:
+    def array(name: str) -> Any:
+        return arrays[prefix + name]
+
+    times, number = array("times"), array("number")
+    grid = SizeGrid(array("grid_volume"), **header["grid"])
+    balance = {name: array(f"balance_{name}") for name in _BALANCE}
+    streams: dict[str, Any] = {
+        way: {name: array(f"{way}_{k}") for k, name in enumerate(header["balance"][way])} for way in _WAYS
+    }
     parts = {
-        name: (arrays[f"events_{k}"], arrays[f"volume_flux_{k}"])
+        name: (array(f"events_{k}"), array(f"volume_flux_{k}"))
         for k, name in enumerate(header["contributions"])
     }
-    shapes = {a.shape for a in balance.values()} | {a.shape for pair in parts.values() for a in pair}
-    if times.ndim != 1 or number.shape != (times.size, grid.sections) or shapes != {times.shape}:
+    tanks = tuple(_result(tank, arrays, f"{prefix}tank_{k}_") for k, tank in enumerate(header["tanks"]))
+    series = [*balance.values(), *(volume for way in streams.values() for volume in way.values())]
+    shapes = {a.shape for a in (*series, *(a for pair in parts.values() for a in pair))}
+    fitting = times.ndim == 1 and number.shape == (times.size, grid.sections) and shapes == {times.shape}
+    if not fitting or any(tank.number.shape != number.shape for tank in tanks):
         raise ValueError("its arrays do not fit each other")
     status = header["status"] | {"outcome": Outcome[header["status"]["outcome"]]}
     return Result(
         times=times,
         grid=grid,
         number=number,
-        balance=Balance(initial=header["balance"]["initial"], **balance),
+        balance=Balance(initial=header["balance"]["initial"], **balance, **streams),
         contributions=Contributions(parts),
         status=Status(**status),
         stats=RunStatistics(**header["stats"]),
         settings=header["settings"],
+        tanks=tanks,
     )
 
 

@@ -69,8 +69,9 @@ def summary_csv(result: Result, path: str | os.PathLike[str], *, structure: Stru
     Notes
     -----
     Columns: time; number; volume fraction; d10, d50, d90 by volume; D43 and D32; geometric standard deviation
-    by number; volume fraction beyond the grid; share of the volume in negative sections; events and volume
-    flux of each kernel part.
+    by number; volume fraction beyond the grid; share of the volume in negative sections; what each
+    stream brought (inward) or took (outward) since the start, as a volume fraction of the vessel; events and
+    volume flux of each kernel part. Sizes of an output without particles are nan.
     """
     quantiles = result.quantile_diameter([0.1, 0.5, 0.9], structure=structure)
     kind = "" if structure is None else " outer"
@@ -84,6 +85,8 @@ def summary_csv(result: Result, path: str | os.PathLike[str], *, structure: Stru
         ("GSD by number [-]", result.geometric_standard_deviation(0)),
         ("volume fraction beyond grid [-]", result.balance.beyond_grid),
         ("negative share [-]", result.balance.negative_share),
+        *((f"inward {name} [-]", volume) for name, volume in result.balance.inward.items()),
+        *((f"outward {name} [-]", volume) for name, volume in result.balance.outward.items()),
     ]
     for name, part in result.contributions.items():
         columns.append((f"events of {name} [1/(m3 s)]", part.events))

@@ -4,7 +4,8 @@ Every function draws on `ax`, or on a new figure without it, and returns the axi
 and no global setting is touched. `unit` is the length of the unit of the size axis in metres (1e-9 for nm,
 1e-6 for um, 1e-3, 1), chosen from the data without it. `structure` (Compact or Fractal) puts the outer
 diameter of the aggregates on the axis in place of the diameter of the sphere of equal volume; what is counted
-stays the same. Several results may be drawn on one axis; `label` then names each in the legend.
+stays the same. Several results may be drawn on one axis; `label` then names each in the legend. Where nothing
+is there yet, as in a tank that starts from clear liquid, nothing is drawn.
 
 References: [1] ISO 9276-1:1998 (graphical representation, q_r and Q_r); [2] ISO 9276-2:2014 (mean sizes).
 """
@@ -19,14 +20,20 @@ import numpy as np
 from aggsim import _checks
 from aggsim._checks import FloatArray
 from aggsim.outputs import _axes, _units
-from aggsim.outputs._curves import DensityCurves, measured_classes
+from aggsim.outputs._curves import DensityCurves, draw_classes, measured_classes
+from aggsim.outputs._tanks import States
 from aggsim.outputs._units import Structure
 from aggsim.outputs.barrier_figures import pair_energy as pair_energy
 from aggsim.outputs.barrier_figures import shelf_life as shelf_life
 from aggsim.outputs.barrier_figures import stability_map as stability_map
 from aggsim.outputs.barrier_figures import stability_over_salt as stability_over_salt
+from aggsim.outputs.design_figures import settled_share as settled_share
+from aggsim.outputs.design_figures import steady_size as steady_size
 from aggsim.outputs.kernel_maps import dominant_mechanism_map as dominant_mechanism_map
 from aggsim.outputs.kernel_maps import kernel_map as kernel_map
+from aggsim.outputs.vessel_figures import account as account
+from aggsim.outputs.vessel_figures import along_train as along_train
+from aggsim.outputs.vessel_figures import train as train
 from aggsim.result import Result
 from aggsim.sizes import means as size_means
 
@@ -79,23 +86,10 @@ def distribution(
     vertical line, since its density has no height.
     """
     frame = _size_frame(result, times, r, structure, measured, unit, label, ax)
-    ax, scale = frame.ax, frame.scale
-    top = max(ax.get_ylim()[1] / 1.06, 0.0) if ax.has_data() else 0.0
-    for row, look in enumerate(frame.looks):
-        lone = frame.curves.lone(row)
-        if lone is not None:
-            ax.axvline(lone / scale.size, **look | {"label": f"{look['label']} (one size)"})
-            continue
-        x, q = frame.curves.line(row)
-        ax.plot(x / scale.size, q, **look)
-        top = max(top, float(q.max()))
+    ax = frame.ax
+    frame.curves.draw(ax, frame.scale.size, frame.looks, r)
     if frame.classes is not None:
-        edges, shares = frame.classes
-        q = shares / np.diff(np.log(edges))
-        ax.stairs(q, edges / scale.size, color="black", linewidth=1.2, label="measured")
-        top = max(top, float(q.max()))
-    ax.set_ylim(0.0, 1.06 * top if top > 0.0 else 1.0)
-    ax.set_ylabel(rf"density $q_{{{r:g}}}^* = \mathrm{{d}}Q_{{{r:g}}}\,/\,\mathrm{{d}}\,\ln x$  [-]")
+        draw_classes(ax, frame.scale.size, *frame.classes)
     _axes.legend(ax, frame.own)
     return ax
 
@@ -167,6 +161,7 @@ def sizes(
     -------
     matplotlib.axes.Axes
     """
+    filled = States(result.grid, result.number).filled
     if means is None:
         means = ((4, 3),) if structure is None else ()
     lines: list[tuple[str, FloatArray]] = []
@@ -179,20 +174,14 @@ def sizes(
     lines += [(f"D[{p:g},{q:g}]{note}", result.mean_diameter(p, q)) for p, q in means]
     if not lines:
         _checks.refuse("shares", "no share, and no mean", "at least one of both", "shares=(0.5,)")
-    everything = np.concatenate([values for _, values in lines])
+    everything = np.concatenate([values[filled] for _, values in lines])
     ax, own = _axes.axis(ax)
-    scale = _axes.size_unit(ax.yaxis, everything, unit)
-    low, high = everything.min() / scale.size / 1.1, everything.max() / scale.size * 1.1
-    low, high = _axes.widen(ax.yaxis, float(low), float(high))
+    scale = _axes.size_axis(ax.yaxis, *_axes.around(everything), unit, _units.kind_of_diameter(structure))
     time = _axes.time_axis(ax, result.times)
-    names = _named(label, [name for name, _ in lines])
+    names = _axes.named(label, [name for name, _ in lines])
     for name, (_, values) in zip(names, lines, strict=True):
-        look = _look(len(ax.lines), result.times)
+        look = _axes.look(len(ax.lines), result.times.size)
         ax.plot(result.times / time.size, values / scale.size, label=name, **look)
-    ax.set_yscale("log")
-    ax.set_ylim(low, high)
-    _axes.log_size(ax.yaxis, low, high)
-    ax.set_ylabel(f"{_kind_of_diameter(structure)} [{scale.glyph}]")
     _axes.dress(ax)
     _axes.legend(ax, own)
     return ax
@@ -201,10 +190,12 @@ def sizes(
 def number(result: Result, *, label: str = "", ax: Any = None) -> Any:
     """Draw the total number of particles per volume of suspension [1/m3] against time."""
     total = result.total_number()
+    total = np.where(total > 0.0, total, np.nan)  # a logarithmic axis has no zero
+    there = total[States(result.grid, result.number).filled]
     ax, own = _axes.axis(ax)
-    low, high = _axes.widen(ax.yaxis, float(total.min()), float(total.max()))
+    low, high = _axes.widen(ax.yaxis, float(there.min()), float(there.max()))
     time = _axes.time_axis(ax, result.times)
-    look = _look(len(ax.lines), result.times)
+    look = _axes.look(len(ax.lines), result.times.size)
     ax.plot(result.times / time.size, total, label=label or None, **look)
     ax.set_yscale("log")
     margin = 1.02 * (high / low) ** 0.08
@@ -264,7 +255,7 @@ def contributions(result: Result, *, share: bool = True, ax: Any = None) -> Any:
         return ax
     for k, (name, part) in enumerate(parts.items()):
         events = np.where(part.events > 0.0, part.events, np.nan)  # a logarithmic axis has no zero
-        ax.plot(t, events, label=name, **_look(k, result.times))
+        ax.plot(t, events, label=name, **_axes.look(k, result.times.size))
     if any((part.events > 0.0).any() for part in parts.values()):
         ax.set_yscale("log")
     ax.set_ylabel("collision events [1/(m³ s)]")
@@ -296,59 +287,36 @@ def _size_frame(
     ax: Any,
 ) -> _SizeFrame:
     rows = _rows(result, times)
-    curves = DensityCurves.of(result, rows, _units.quantity(r), structure)
+    curves = DensityCurves.of(result.grid, result.number[rows], _units.quantity(r), structure)
     classes = None if measured is None else measured_classes(measured, r)
     low, high = curves.visible()
     if classes is not None:
         low, high = min(low, float(classes[0][0])), max(high, float(classes[0][-1]))
     ax, own = _axes.axis(ax)
-    scale = _axes.size_unit(ax.xaxis, np.array([low, high]), unit)
-    low, high = _axes.widen(ax.xaxis, low / scale.size, high / scale.size)
-    names = _named(label, _units.time_labels(result.times[rows]))
     style = "--" if ax.has_data() else "-"
+    scale = _axes.size_axis(ax.xaxis, low, high, unit, f"{_units.kind_of_diameter(structure)} $x$")
+    names = _axes.named(label, _units.time_labels(result.times[rows]))
     looks = [
         {"label": name, "color": colour, "linestyle": style, "linewidth": 1.8}
         for name, colour in zip(names, _axes.sequence(len(rows)), strict=True)
     ]
-    ax.set_xscale("log")
-    ax.set_xlim(low, high)
-    _axes.log_size(ax.xaxis, low, high)
-    ax.set_xlabel(f"{_kind_of_diameter(structure)} $x$ [{scale.glyph}]")
     _axes.dress(ax)
     return _SizeFrame(ax, own, scale, rows, curves, classes, looks)
 
 
 def _rows(result: Result, times: Any) -> list[int]:
     """Outputs to draw; of those spaced as logarithms, ones between which the number changes by like factors."""
-    count = result.times.size
-    if times is not None or count <= _CURVES or not _units.log_like(result.times):
+    if times is not None:
         return _units.chosen_times(result, times, _CURVES)
-    change = np.append(0.0, np.abs(np.diff(np.log(result.total_number()))).cumsum())
-    if change[-1] == 0.0:
-        return _units.evenly(count, _CURVES)
-    wanted = np.linspace(0.0, change[-1], _CURVES)
-    nearest = np.abs(change[:, None] - wanted).argmin(axis=0).tolist()
-    return sorted({*nearest[:-1], count - 1})
-
-
-def _named(label: str, texts: list[str]) -> list[str]:
-    return [f"{label}, {text}" for text in texts] if label else texts
-
-
-def _look(k: int, times: FloatArray) -> dict[str, Any]:
-    """Colour and line of curve k; markers where the outputs are so few that a line alone would hide them."""
-    look: dict[str, Any] = {
-        "color": _axes.COLOURS[k % len(_axes.COLOURS)],
-        "linestyle": _axes.LINES[k % len(_axes.LINES)],
-        "linewidth": 1.8,
-    }
-    if times.size <= _axes.FEW:
-        look |= {"marker": "o", "markersize": 4}
-    return look
-
-
-def _kind_of_diameter(structure: Structure | None) -> str:
-    return "volume-equivalent diameter" if structure is None else "outer diameter"
+    filled = States(result.grid, result.number).filled
+    chosen = _units.evenly(len(filled), _CURVES)
+    if len(filled) > _CURVES and _units.log_like(result.times):
+        change = np.append(0.0, np.abs(np.diff(np.log(result.total_number()[filled]))).cumsum())
+        if change[-1] > 0.0:
+            wanted = np.linspace(0.0, change[-1], _CURVES)
+            nearest = np.abs(change[:, None] - wanted).argmin(axis=0).tolist()
+            chosen = sorted({*nearest[:-1], len(filled) - 1})
+    return [filled[k] for k in chosen]
 
 
 def _number_ticks(axis_part: Any, ratio: float) -> None:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 
@@ -27,6 +27,8 @@ class Balance:
     negative_share : (n_times,)
         Share of the volume in sections with a negative number, which high-order births can leave; the smaller
         the better resolved [-].
+    inward, outward : dict of (n_times,)
+        What each stream brought or took since the start, by name, as a volume fraction of the vessel [-].
     """
 
     initial: float
@@ -34,17 +36,44 @@ class Balance:
     beyond_grid: FloatArray
     beyond_grid_number: FloatArray
     negative_share: FloatArray
+    inward: Mapping[str, FloatArray] = field(default_factory=dict)
+    outward: Mapping[str, FloatArray] = field(default_factory=dict)
+
+    @property
+    def fed(self) -> FloatArray:
+        """What streams brought since the start, doses included, (n_times,) [-]."""
+        return sum(self.inward.values(), start=np.zeros_like(self.present))
+
+    @property
+    def withdrawn(self) -> FloatArray:
+        """What left with the outflow and by withdrawals since the start, (n_times,) [-]."""
+        gone = [volume for name, volume in self.outward.items() if name != "settled"]
+        return sum(gone, start=np.zeros_like(self.present))
+
+    @property
+    def settled(self) -> FloatArray:
+        """What settled out since the start, (n_times,) [-]."""
+        return self.outward.get("settled", np.zeros_like(self.present))
+
+    @property
+    def scale(self) -> float:
+        """Everything that was there or came in until the last output [-], what shares are of; 1 if that is nothing."""
+        return (self.initial + float(self.fed[-1])) or 1.0
 
     @property
     def closure(self) -> FloatArray:
-        """Relative closure error (present + beyond the grid - initial) / initial, (n_times,)."""
-        return (self.present + self.beyond_grid - self.initial) / self.initial
+        """Relative closure error (n_times,): present, beyond the grid and gone, less initial and fed, over `scale`."""
+        gone = self.present + self.beyond_grid + self.withdrawn + self.settled
+        return (gone - self.initial - self.fed) / self.scale
 
     def __str__(self) -> str:
+        streams = "".join(
+            f"{name} {volume[-1]:.6g}, " for name, volume in (*self.inward.items(), *self.outward.items())
+        )
         return (
-            f"particle volume fraction: initial {self.initial:.6g}, present {self.present[-1]:.6g}, "
+            f"particle volume fraction: initial {self.initial:.6g}, {streams}present {self.present[-1]:.6g}, "
             f"beyond the grid {self.beyond_grid[-1]:.3g}; largest closure error {np.abs(self.closure).max():.1e}, "
-            f"largest share in negative sections {self.negative_share.max():.1e}"
+            f"largest share in negative sections {self.negative_share.max() + 0.0:.1e}"
         )
 
 

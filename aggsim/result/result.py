@@ -12,13 +12,16 @@ from scipy.optimize import brentq
 
 from aggsim import _checks
 from aggsim._checks import FloatArray
+from aggsim.errors import SimulationError
 from aggsim.result.account import Balance, Contributions
+from aggsim.result.error import ErrorEstimate, Later
+from aggsim.result.readings import Readings
 from aggsim.result.status import RunStatistics, Status
-from aggsim.sizes import SizeGrid, means
+from aggsim.sizes import SizeGrid
 
 
 @dataclass(frozen=True, eq=False)
-class Result:
+class Result(Readings):
     """Particle-size distribution at each output time of a run.
 
     Attributes
@@ -39,6 +42,11 @@ class Result:
         What the run cost.
     settings : dict
         The numerical choices (scheme, method, tolerance) in words.
+    tanks : tuple of Result
+        One result per tank where the vessel has several, with its own account; the numbers above are then those
+        of the last tank, which is what leaves, and the account is that of all tanks. Empty for one tank.
+    estimate : Later, optional
+        Where `error` comes from.
     """
 
     times: FloatArray
@@ -49,54 +57,26 @@ class Result:
     status: Status
     stats: RunStatistics
     settings: Mapping[str, str] = field(default_factory=dict)
+    tanks: tuple[Result, ...] = ()
+    estimate: Later | None = field(default=None, repr=False)
 
     def __post_init__(self) -> None:
         for array in (self.times, self.number):
             array.setflags(write=False)
 
-    def total_number(self) -> FloatArray:
-        """Number of particles in all sections (n_times,) [1/m3]."""
-        return self.moment(0)
+    @property
+    def error(self) -> ErrorEstimate:
+        """Estimated numerical error of every figure; without an `accuracy` from one coarse run, made at first use.
 
-    def moment(self, k: float) -> FloatArray:
-        """Volume moment sum_i n_i v_i**k (n_times,) [m3**k / m3], k real; moment(1) is the volume fraction."""
-        return means.moment(self.grid.volume, self.number, k)
-
-    def mean_diameter(self, p: float, q: float) -> FloatArray:
-        """Mean diameter D[p, q] (n_times,) [m], for example 4, 3 (by volume) or 3, 2 (Sauter)."""
-        return means.mean_diameter(self.grid.volume, self.number, p, q)
-
-    def quantile_diameter(self, p: Any, r: float = 3, structure: Any = None) -> FloatArray:
-        """Diameter below which the share p of the quantity lies (n_times,) [m], or (n_times, n_p) for several p.
-
-        Parameters
-        ----------
-        p : float or (n_p,)
-            Shares between 0 and 1.
-        r : float
-            Type of quantity of ISO 9276-1: 0 number, 2 surface, 3 volume.
-        structure : Compact or Fractal, optional
-            Gives the outer (collision) diameter of the aggregates; without it the volume-equivalent diameter.
+        Raises SimulationError where there is nothing to estimate it from: a loaded result, a run that ended
+        early, one tank of several.
         """
-        return means.quantile_diameter(self.grid.volume, self.number, p, r=r, structure=structure)
-
-    def density(self, r: float = 3, log: bool = True) -> FloatArray:
-        """Density q_r* = dQ_r / d ln x (n_times, n_sections) [-], or q_r = dQ_r / dx [1/m] with log=False."""
-        return means.density(self.grid.volume, self.number, r, log=log)
-
-    def cumulative(self, diameter: Any, r: float = 3) -> FloatArray:
-        """Share Q_r of the quantity below each diameter [m], (n_times, n_diameters)."""
-        sizes = _checks.array("diameter", np.atleast_1d(_checks.plain(diameter, "m")), "m", above=0.0)
-        return means.cumulative(self.grid.volume, self.number, means.volume_of(sizes), r)
-
-    def span(self, r: float = 3) -> FloatArray:
-        """Span (d90 - d10) / d50 (n_times,) [-]."""
-        d10, d50, d90 = np.moveaxis(self.quantile_diameter(np.array([0.1, 0.5, 0.9]), r), -1, 0)
-        return np.asarray((d90 - d10) / d50)
-
-    def geometric_standard_deviation(self, r: float = 0) -> FloatArray:
-        """Geometric standard deviation of the diameter by quantity r (n_times,) [-]."""
-        return means.geometric_standard_deviation(self.grid.volume, self.number, r)
+        if self.estimate is None:
+            raise SimulationError(
+                "this result carries no error estimate (it was loaded, or is one tank of several). "
+                "Try: the `error` of the result that simulate returned."
+            )
+        return self.estimate.get()
 
     def first_time(self, quantity: Any, value: float) -> float:
         """First time [s] at which a quantity of this result passes a value, NaN if it never does.

@@ -210,6 +210,56 @@ def segment_jacobian(segments, section, coefficient, number, factor, out):  # ty
 
 
 @compiled
+def fragment_matrix(x, order, half, rate, parent, volume, count):  # type: ignore[no-untyped-def]
+    """Upper triangular matrix (n, n) of breakage: rate[i] * (fragments of i in section k, less 1 for k = i).
+
+    Fragments are shared by Lagrange weights among at most `order` pivots up to their parent, in v or (`half`)
+    in v**0.5; those below the first pivot count there by volume. Volume is kept by the diagonal.
+    """
+    n = x.size
+    out = np.zeros((n, n))
+    root = np.sqrt(x)
+    weight = np.empty(order)
+    for t in range(parent.size):
+        i, v = parent[t], volume[t]
+        if v <= x[0]:
+            out[0, i] += count[t] * (v / x[0])
+            continue
+        nodes = min(order, i + 1)
+        cell = min(max(np.searchsorted(x, v, side="right") - 1, 0), i - 1)
+        a = max(0, min(cell - nodes // 2 + 1, i + 1 - nodes))
+        node, at = (root, np.sqrt(v)) if half and nodes > 2 else (x, v)
+        for p in range(nodes):
+            weight[p] = count[t]
+            for q in range(nodes):
+                if q != p:
+                    weight[p] *= (at - node[a + q]) / (node[a + p] - node[a + q])
+            out[a + p, i] += weight[p]
+    for i in range(n):
+        left = 0.0
+        for k in range(i):
+            out[k, i] *= rate[i]
+            left += out[k, i] * x[k]
+        out[i, i] = -left / x[i]
+    return out
+
+
+@compiled
+def triangular_rates(matrix, number, factor, out):  # type: ignore[no-untyped-def]
+    """Add factor * matrix @ number to `out`, for an upper triangular matrix (n, n); return the sum of the rates."""
+    n = matrix.shape[0]
+    top = occupied(number, n)
+    total = 0.0
+    for p in range(top):
+        rate = 0.0
+        for i in range(p, top):
+            rate += matrix[p, i] * number[i]
+        out[p] += factor * rate
+        total += out[p]
+    return total
+
+
+@compiled
 def monomer_rates(kernel, x, number, factor, out):  # type: ignore[no-untyped-def]
     """Add factor times the exact discrete Smoluchowski rates on the multiples x_k = (k + 1) x_0."""
     n = x.size

@@ -30,7 +30,9 @@ class FixedPivot(Scheme):
 
     Orders 4 and 6 take up the idea of high-order moment conservation [2]_ on the same quadratic form. Births
     may then get small negative weights: the result reports the negative share of the volume, nothing is
-    clipped. Towards the top of the grid the order falls to 2.
+    clipped. Towards the top of the grid the order falls to 2. Fragments of breakage are integrated against the
+    same interpolation, over pivots that do not lie above their parent; what is smaller than the first pivot is
+    counted there by volume.
 
     Parameters
     ----------
@@ -68,11 +70,16 @@ class FixedPivot(Scheme):
     def prepare(self, grid: SizeGrid) -> SegmentScheme:
         self.check(grid)
         pivots = continued(grid, self.moments // 2)
-        births = _loops.interpolation_births(pivots, grid.sections, self.moments, self.moments == 6)
-        return SegmentScheme.build(grid, pivots, births)
+        half = self.moments == 6
+        births = _loops.interpolation_births(pivots, grid.sections, self.moments, half)
+        return SegmentScheme.build(grid, pivots, births, self.moments, half)
 
-    def default_grid(self, start: StartingDistribution) -> SizeGrid:
-        return starting_grid(start, per_doubling=PER_DOUBLING[self.moments])
+    @property
+    def order(self) -> float:
+        return float(self.moments)
+
+    def default_grid(self, start: StartingDistribution, finer: float = 1.0) -> SizeGrid:
+        return starting_grid(start, per_doubling=PER_DOUBLING[self.moments], finer=finer)
 
     def project(self, start: StartingDistribution, grid: SizeGrid) -> FloatArray:
         return project(start, grid, moments=self.moments)

@@ -42,8 +42,12 @@ class Sectional(Scheme):
         require_sections(grid, 2, self)
         _sections_per_doubling(grid)
 
-    def default_grid(self, start: StartingDistribution) -> SizeGrid:
-        return starting_grid(start, per_doubling=8, geometric=True)
+    @property
+    def order(self) -> float:
+        return 2.0
+
+    def default_grid(self, start: StartingDistribution, finer: float = 1.0) -> SizeGrid:
+        return starting_grid(start, per_doubling=8, geometric=True, finer=finer, whole=True)
 
     def prepare(self, grid: SizeGrid) -> SegmentScheme:
         self.check(grid)

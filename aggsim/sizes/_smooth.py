@@ -148,12 +148,17 @@ class Cumulative:
         climbed = np.maximum.accumulate(self.reached, axis=-1)
         piece = (climbed[:, None, 1:-1] < p[None, :, None]).sum(axis=-1)
         knots = np.broadcast_to(self.knots, self.reached.shape)
-        low, high = knots[rows, piece], knots[rows, piece + 1]
+        low, width = knots[rows, piece], knots[rows, piece + 1] - knots[rows, piece]
+        offset = low - self.origin[piece]
+        powers = [power[rows, piece] for power in self.power]  # looked up once, not at every halving
         for _ in range(_HALVINGS):
-            middle = 0.5 * (low + high)
-            short = self._value(piece, middle) < p
-            low, high = np.where(short, middle, low), np.where(short, high, middle)
-        return np.asarray(0.5 * (low + high))
+            width = 0.5 * width
+            middle = offset + width
+            value = powers[0]
+            for power in powers[1:]:
+                value = value * middle + power
+            offset = np.where(value < p, middle, offset)
+        return np.asarray(self.origin[piece] + offset + 0.5 * width)
 
     def _value(self, piece: NDArray[np.intp], kappa: FloatArray) -> FloatArray:
         rows = np.arange(self.reached.shape[0])[:, None]

@@ -15,6 +15,7 @@ from aggsim.sizes import means
 
 # sections; a dense pair matrix of more does not fit in the memory of an ordinary machine
 LARGEST_GRID = 20_000
+LARGEST_MONOMER_GRID = 1_000_000  # sections; multiples of one size need no matrix
 
 
 @dataclass(frozen=True, eq=False)
@@ -43,11 +44,8 @@ class SizeGrid:
             raise GridError(
                 f"volume holds {volume.size} pivot; a grid needs at least 2. Try: a larger `largest`."
             )
-        if volume.size > LARGEST_GRID:
-            raise GridError(
-                f"the grid would have {volume.size} sections; at most {LARGEST_GRID} are allowed. "
-                "Try: fewer sections per doubling, a smaller `largest`, or monomers_then_geometric."
-            )
+        multiples = self.monomer is not None and self.ratio is None
+        _refuse_long(volume.size, LARGEST_MONOMER_GRID if multiples else LARGEST_GRID)
         volume.setflags(write=False)
         object.__setattr__(self, "volume", volume)
 
@@ -78,7 +76,7 @@ class SizeGrid:
     def monomers(cls, volume: Any, count: int) -> SizeGrid:
         """Every multiple of one particle volume: volume * (1, 2, ..., count) [m3]."""
         unit = _checks.scalar("volume", volume, "m3", above=0.0, error=GridError)
-        _checks.count("count", count, least=2, most=LARGEST_GRID)
+        _checks.count("count", count, least=2, most=LARGEST_MONOMER_GRID)
         return cls(unit * np.arange(1.0, count + 1.0), monomer=unit)
 
     @classmethod
@@ -124,13 +122,48 @@ class SizeGrid:
         if self.ratio is None:
             unit = self.monomer if self.monomer is not None else top - float(self.volume[-2])
             steps = int(np.ceil((last - top) / unit - 1e-9))
-            _refuse_long(self.volume.size + steps)
+            _refuse_long(self.volume.size + steps, LARGEST_MONOMER_GRID)
             more = unit * (round(top / unit) + np.arange(1.0, steps + 1.0))
         else:
             steps = int(np.ceil(np.log(last / top) / np.log(self.ratio) - 1e-9))
             _refuse_long(self.volume.size + steps)
             more = top * self.ratio ** np.arange(1.0, steps + 1.0)
         return SizeGrid(np.concatenate([self.volume, more]), ratio=self.ratio, monomer=self.monomer)
+
+    def extended_down(self, smallest: Any) -> SizeGrid:
+        """This grid with pivots below its first one, down to exactly `smallest` [m3], for fragments.
+
+        The pivots below are geometric, at most as far apart as those at the top of the grid, or a quarter of a
+        doubling where that is made of whole monomers.
+        """
+        first = float(self.volume[0])
+        last = _checks.scalar("smallest", smallest, "m3", above=0.0, below=first, error=GridError)
+        ratio = 2.0**0.25 if self.ratio is None else self.ratio
+        steps = int(np.ceil(np.log(first / last) / np.log(ratio) - 1e-9))
+        _refuse_long(self.sections + steps)
+        below = last * (first / last) ** (np.arange(steps) / steps)
+        return SizeGrid(np.concatenate([below, self.volume]), ratio=self.ratio)
+
+    def coarser(self, factor: float) -> SizeGrid:
+        """A grid of the same range with `factor` times fewer sections where this one is geometric.
+
+        Whole monomers at the lower end stay as far as the new spacing needs them; a grid of nothing else is
+        returned as it is.
+        """
+        scale = _checks.scalar("factor", factor, above=0.0, error=GridError)
+        if self.is_monomers:
+            return self
+        top = float(self.volume[-1])
+        if self.monomer is not None and self.ratio is not None:
+            density = float(np.log(2.0) / np.log(self.ratio)) / scale
+            return SizeGrid.monomers_then_geometric(self.monomer, top, density)
+        index = np.arange(np.ceil((self.sections - 1) / scale - 1e-9) + 1.0) * scale
+        last = np.log(self.volume[-1] / self.volume[-2])
+        between = np.exp(np.interp(index, np.arange(self.sections), np.log(self.volume)))
+        beyond = index > self.sections - 1
+        between[beyond] = top * np.exp((index[beyond] - (self.sections - 1)) * last)
+        between[0] = self.volume[0]
+        return SizeGrid(between, ratio=None if self.ratio is None else self.ratio**scale)
 
     @property
     def sections(self) -> int:
@@ -180,9 +213,9 @@ class SizeGrid:
         )
 
 
-def _refuse_long(sections: int) -> None:
-    if sections > LARGEST_GRID:
+def _refuse_long(sections: int, most: int = LARGEST_GRID) -> None:
+    if sections > most:
         raise GridError(
-            f"the grid would have {sections} sections; at most {LARGEST_GRID} are allowed. "
-            "Try: fewer sections per doubling or a smaller `largest`."
+            f"the grid would have {sections} sections; at most {most} are allowed. "
+            "Try: fewer sections per doubling, a smaller `largest`, or monomers_then_geometric."
         )

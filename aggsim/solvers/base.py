@@ -9,7 +9,6 @@ A new method is one class with these duties:
    `until` is interpolated without loss of order.
 4. The stepper uses the exact Jacobian that it is given: that is what keeps linear invariants (the particle
    volume) at round-off when the method is implicit.
-4. `at(times)` interpolates inside the last step without loss of order.
 """
 
 from __future__ import annotations
@@ -22,6 +21,8 @@ from typing import Protocol
 
 from aggsim import _checks
 from aggsim._checks import FloatArray
+
+LARGEST_MATRIX = 8000  # entries of a state up to which methods use a full Jacobian
 
 Rates = Callable[[float, FloatArray], FloatArray]
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -50,32 +51,35 @@ class GrowthWatch:
         """Forget what was seen before `time`: a strength has jumped."""
         self._seen, self._begin, self._next = [], time, 0.0
 
-    def on(self, grid: SizeGrid) -> None:
-        """Watch this grid from now on."""
+    def on(self, grid: SizeGrid, volumes: Sequence[float] = (1.0,), streams: int = 0) -> None:
+        """Watch this grid from now on, in tanks of these shares of the volume and so many streams."""
         x = grid.volume
         first = min(int(np.searchsorted(x, x[-1] / 2.0**_GUARD)), x.size - 6)
-        weights = np.zeros((2, x.size + 2))
+        weights = np.zeros((3, x.size + 2 + streams))
         weights[0, max(first, 0) : x.size] = x[max(first, 0) :] / self._volume
-        weights[0, -1] = 1.0 / self._volume
+        weights[0, x.size + 1] = 1.0 / self._volume
         weights[1, : x.size] = x * x
-        self._weights = weights
-        self._pivots = x
+        weights[2, x.size + 1] = 1.0 / self._volume
+        shares = np.array(volumes)
+        self._weights = (shares[:, None] * weights[:, None, :]).reshape(3, -1)
+        self._pivots = (shares[:, None] * x / self._volume).ravel()
+        self._sections = np.flatnonzero(np.arange(shares.size * weights.shape[1]) % weights.shape[1] < x.size)
         self._top = float(x[-1])
 
     def look(self, state: FloatArray) -> tuple[float, float, bool]:
         """Shares of the volume at or beyond the top, and beyond it; and whether M2 has doubled since a sighting."""
-        top, second = (self._weights @ state).tolist()
-        return top, float(state[-1]) / self._volume, second >= self._next
+        top, second, beyond = (self._weights @ state).tolist()
+        return top, beyond, second >= self._next
 
     def negative_share(self, state: FloatArray) -> float:
         """Share of the volume that stands in sections with a negative number."""
-        return -float(np.minimum(state[:-2], 0.0) @ self._pivots) / self._volume
+        return -float(np.minimum(state[self._sections], 0.0) @ self._pivots)
 
     def sight(self, time: float, state: FloatArray, rates: FloatArray) -> None:
         """Note the growth time of M2."""
         second = float(self._weights[1] @ state)
         # what leaves the top would have counted at least with the volume of the top
-        gain = float(self._weights[1] @ rates) + float(rates[-1]) * self._top
+        gain = float(self._weights[1] @ rates) + float(self._weights[2] @ rates) * self._volume * self._top
         self._next = 2.0 * second
         if gain > 0.0:
             self._seen.append(Approach(time, second / gain))

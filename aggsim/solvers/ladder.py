@@ -35,17 +35,31 @@ class Ladder:
         """True where the grid may be continued past its top."""
         return self._automatic
 
-    def first(self, number: FloatArray) -> tuple[SizeGrid, FloatArray]:
-        """Grid to begin with, and the starting numbers on it."""
+    @property
+    def whole(self) -> SizeGrid:
+        """The grid that was asked for."""
+        return self._whole
+
+    def first(self, number: FloatArray) -> SizeGrid:
+        """Grid to begin with, for numbers on the whole grid."""
         x = self._whole.volume
         above = np.cumsum((number * x)[::-1])[::-1]
         used = int(np.flatnonzero(above > UNSEEN * above[0])[-1])
         if x[-1] <= 2.0**NEAR * x[used]:
-            return self._whole, number
-        grid = self._part(2.0**ROOM * float(x[used]))
+            return self._whole
+        return self._part(2.0**ROOM * float(x[used]))
+
+    def cut(self, number: FloatArray, grid: SizeGrid) -> FloatArray:
+        """Numbers of the whole grid on a part of it, or on its continuation.
+
+        What stands above the part, a tail of no account, counts at its top with its volume.
+        """
+        x = self._whole.volume
+        if grid.sections >= x.size:
+            return np.concatenate([number, np.zeros(grid.sections - x.size)])
         kept = number[: grid.sections].copy()
         kept[-1] += float(number[grid.sections :] @ x[grid.sections :]) / float(grid.volume[-1])
-        return grid, kept
+        return kept
 
     def next(self, grid: SizeGrid) -> SizeGrid | None:
         """The next longer grid, None where there is none."""

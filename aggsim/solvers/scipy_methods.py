@@ -12,7 +12,7 @@ import numpy as np
 from scipy import integrate
 
 from aggsim._checks import FloatArray
-from aggsim.solvers.base import Method, Problem
+from aggsim.solvers.base import LARGEST_MATRIX, Method, Problem
 
 # Strides of LSODA: long enough that the loop around them costs nothing, short enough to be watched
 _FIRST_STRIDE = 0.05  # share of the time in which the fastest section changes by its own scale
@@ -39,9 +39,19 @@ class LsodaStepper:
 
     def _begin(self) -> None:
         self._left = _TOO_MANY_EVALUATIONS
-        self._ode = integrate.ode(self._counted, self._problem.jacobian)
+        # for a long state a full matrix would not fit in memory; the Adams methods of LSODA need none
+        long = self.state.size > LARGEST_MATRIX
+        self._ode = integrate.ode(self._counted, None if long else self._problem.jacobian)
         atol: Any = self._problem.atol  # an array is allowed; the type stubs know a float alone
-        self._ode.set_integrator("lsoda", rtol=self._problem.rtol, atol=atol, nsteps=_TOO_MANY_EVALUATIONS)
+        band: Any = 0 if long else None
+        self._ode.set_integrator(
+            "lsoda",
+            rtol=self._problem.rtol,
+            atol=atol,
+            nsteps=_TOO_MANY_EVALUATIONS,
+            lband=band,
+            uband=band,
+        )
         self._ode.set_initial_value(self.state, self.time)
 
     def _counted(self, time: float, state: FloatArray) -> FloatArray:
@@ -75,7 +85,8 @@ class LsodaStepper:
 class SolverStepper:
     """One of scipy's step-wise solver objects."""
 
-    def __init__(self, kind: Any, problem: Problem) -> None:
+    def __init__(self, kind: Any, problem: Problem, implicit: bool = True) -> None:
+        options = {"jac": problem.jacobian} if implicit else {}
         self._solver = kind(
             problem.rates,
             problem.start,
@@ -83,7 +94,7 @@ class SolverStepper:
             problem.stop,
             rtol=problem.rtol,
             atol=problem.atol,
-            jac=problem.jacobian,
+            **options,
         )
         self.time, self.state = problem.start, problem.state
 
@@ -147,3 +158,17 @@ class Radau(Method):
 
     def stepper(self, problem: Problem) -> SolverStepper:
         return SolverStepper(integrate.Radau, problem)
+
+
+@dataclass(frozen=True, kw_only=True)
+class DOP853(Method):
+    """Explicit Runge-Kutta method of order 8, for long states that are not stiff, such as 100 000 monomer sizes.
+
+    References
+    ----------
+    .. [1] E. Hairer, S. P. Norsett and G. Wanner, Solving Ordinary Differential Equations I, Sec. II.5,
+       Springer 1993, doi:10.1007/978-3-540-78862-1.
+    """
+
+    def stepper(self, problem: Problem) -> SolverStepper:
+        return SolverStepper(integrate.DOP853, problem, implicit=False)

@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
-import time as clock
 import warnings
+from collections.abc import Sequence
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
@@ -11,14 +12,14 @@ import numpy as np
 from aggsim import _checks
 from aggsim._checks import FloatArray
 from aggsim.errors import AccuracyWarning, InputError, SimulationError, TimesError
-from aggsim.result import Balance, Contributions, Outcome, Result, RunStatistics, Status
+from aggsim.result import Later, Outcome, Result
 from aggsim.schemes import FixedPivot, Scheme
 from aggsim.sizes import SizeGrid, StartingDistribution
+from aggsim.solvers.accuracy import estimated, refined
 from aggsim.solvers.growth import BEYOND_SHARE
-from aggsim.solvers.ladder import Ladder
+from aggsim.solvers.job import Job
 from aggsim.solvers.methods import LSODA, Method
-from aggsim.solvers.progress import progress_for
-from aggsim.solvers.run import Run
+from aggsim.solvers.setting import starts_of
 from aggsim.vessels import Vessel
 
 NEGATIVE_SHARE = 1e-5  # share of the volume in negative sections above which a run warns
@@ -30,13 +31,14 @@ class InterruptedRunError(SimulationError, KeyboardInterrupt):
 
 def simulate(
     vessel: Vessel,
-    start: StartingDistribution,
+    start: StartingDistribution | Sequence[StartingDistribution | None] | None,
     times: Any,
     *,
     grid: SizeGrid | None = None,
     scheme: Scheme | None = None,
     method: Method | None = None,
     rtol: float = 1e-6,
+    accuracy: float | None = None,
     progress: Any = None,
     raise_unfinished: bool = True,
 ) -> Result:
@@ -46,8 +48,8 @@ def simulate(
     ----------
     vessel : Vessel
         What happens to the particles, such as `Batch(kernel)`.
-    start : StartingDistribution
-        The distribution at t = 0.
+    start : StartingDistribution, None, or a sequence with one for each tank
+        The distribution at t = 0; None for a vessel that begins with clear liquid and is fed.
     times : float or (n_times,)
         Output times [s], not negative and strictly increasing. The states are those at exactly these times.
     grid : SizeGrid, optional
@@ -62,7 +64,12 @@ def simulate(
     rtol : float
         Relative tolerance of each section per step, from 1e-12 to 1e-2. The absolute tolerance of section k
         is 1e-6 rtol min(N0, V0 / x_k), with the number N0 and the volume V0 of the start. Errors of reported
-        figures are usually a few times rtol, plus those of the grid.
+        figures are usually a few times rtol, plus those of the grid; `result.error` estimates both.
+    accuracy : float, optional
+        Relative accuracy of the figures in `result.error` (number, moments, mean sizes, quantiles) at all output
+        times, from 1e-9 to 0.1. Grid and tolerance are then chosen and refined until the estimated error is
+        below it; `grid` must be None and `rtol` is not used. Where it cannot be had within 400 sections or 24 runs, the
+        run warns, returns the best, and `result.error.met` is False.
     progress : None, bool or function
         None: a line on a terminal when the run is long; True: at once; False: never; a function is called
         with (fraction, time).
@@ -97,29 +104,24 @@ def simulate(
     ----------
     .. [1] P. G. J. van Dongen, J. Phys. A 20 (1987) 1889, doi:10.1088/0305-4470/20/7/033.
     """
-    began = clock.perf_counter()
     _expect(vessel, Vessel, "vessel", "Batch(kernel)")
-    _expect(start, StartingDistribution, "start", "Monodisperse(diameter=400e-9, volume_fraction=1e-5)")
+    each = starts_of(vessel, start)
     scheme = FixedPivot() if scheme is None else scheme
     method = LSODA() if method is None else method
     _expect(scheme, Scheme, "scheme", "FixedPivot(moments=6)")
     _expect(method, Method, "method", "methods.LSODA()")
     rtol = _checks.scalar("rtol", rtol, least=1e-12, most=1e-2, hint="1e-6")
     outputs = _output_times(times)
-    automatic = grid is None
-    if grid is None:
-        grid = scheme.default_grid(start)
-    _expect(grid, SizeGrid, "grid", "SizeGrid.geometric(smallest=..., largest=...) or None")
-    scheme.check(grid)
-    number = scheme.project(start, grid)
-
-    shown = progress_for(progress)
-    run = Run(vessel, scheme, method, Ladder(scheme, grid, automatic), number, outputs, rtol, shown)
-    try:
-        status = run.execute()
-    finally:
-        shown.close()
-    result = _result(run, status, scheme, method, rtol, clock.perf_counter() - began)
+    job = Job(vessel, each, _within(outputs, vessel), scheme, method)
+    if accuracy is not None:
+        result = refined(job, _accuracy(accuracy, grid), progress)
+    else:
+        chosen = job.grid() if grid is None else grid
+        _expect(chosen, SizeGrid, "grid", "SizeGrid.geometric(smallest=..., largest=...) or None")
+        scheme.check(chosen)
+        result = job.run(chosen, grid is None, rtol, progress)
+        result = replace(result, estimate=Later(lambda: estimated(job, result, grid, rtol)))
+    status = result.status
     if not status.completed and raise_unfinished:
         kind = InterruptedRunError if status.outcome is Outcome.INTERRUPTED else SimulationError
         raise kind(
@@ -128,7 +130,7 @@ def simulate(
             result,
         )
     if status.completed:
-        _warn(result, automatic)
+        _warn(result, grid is None)
     return result
 
 
@@ -151,37 +153,43 @@ def _output_times(times: Any) -> FloatArray:
     )
 
 
-def _result(run: Run, status: Status, scheme: Scheme, method: Method, rtol: float, seconds: float) -> Result:
-    grid, times, states = run.grid, run.times(), run.states()
-    number = np.ascontiguousarray(states[:, : grid.sections])
-    volume = number * grid.volume
-    balance = Balance(
-        initial=run.initial_volume,
-        present=volume.sum(axis=1),
-        beyond_grid=states[:, -1].copy(),
-        beyond_grid_number=states[:, -2].copy(),
-        negative_share=-np.minimum(volume, 0.0).sum(axis=1) / run.initial_volume,
-    )
-    contributions = Contributions(run.collisions())
-    stats = RunStatistics(
-        rate_evaluations=run.rate_evaluations,
-        jacobian_evaluations=run.jacobian_evaluations,
-        steps=run.steps,
-        restarts=run.restarts,
-        grid_extensions=run.extensions,
-        seconds=seconds,
-    )
-    settings = {"scheme": repr(scheme), "method": method.name, "rtol": f"{rtol:g}"}
-    return Result(times, grid, number, balance, contributions, status, stats, settings)
+def _accuracy(accuracy: Any, grid: SizeGrid | None) -> float:
+    if grid is not None:
+        raise InputError(
+            "accuracy and grid are given both; an accuracy chooses the grid by itself. "
+            "Try: grid=None, or this grid without an accuracy and a look at `result.error`."
+        )
+    return _checks.scalar("accuracy", accuracy, least=1e-9, most=0.1, hint="1e-3 for a thousandth")
+
+
+def _within(outputs: FloatArray, vessel: Vessel) -> FloatArray:
+    stop = vessel.spans[-1].stop
+    if outputs[-1] > stop * (1.0 + 1e-9):
+        _checks.refuse(
+            f"times[{outputs.size - 1}]",
+            f"{outputs[-1]:g} s",
+            f"at most {stop:g} s, where the last stage of the vessel stops",
+            "a longer last stage",
+            error=TimesError,
+        )
+    return np.minimum(outputs, stop)
 
 
 def _warn(result: Result, automatic: bool) -> None:
-    beyond = float(result.balance.beyond_grid[-1]) / result.balance.initial
+    beyond = float(result.balance.beyond_grid[-1]) / result.balance.scale
     if beyond > BEYOND_SHARE and not automatic:
         warnings.warn(
             f"{beyond:.2g} of the particle volume grew past the top of the grid "
             f"({result.grid.volume[-1]:.3g} m3) and is missing from sizes and moments. "
             "Try: a larger `largest`, or grid=None.",
+            AccuracyWarning,
+            stacklevel=3,
+        )
+    if result.estimate is not None and result.estimate.ready and not result.error.met:
+        warnings.warn(
+            f"the accuracy asked for, {result.error.asked:g}, was not reached within the cost allowed; the estimated "
+            f"error is {result.error.largest:.2g} ({result.error!r}). Try: fewer output times near gelation, or a "
+            "lower accuracy.",
             AccuracyWarning,
             stacklevel=3,
         )

@@ -7,11 +7,11 @@ from typing import Any
 
 from aggsim._checks import FloatArray
 from aggsim.errors import InputError
-from aggsim.vessels.base import Term
+from aggsim.vessels.base import Process, Site, Term
 
 
 @dataclass(frozen=True)
-class Aggregation:
+class Aggregation(Process):
     """Collisions that stick, at the rates of a kernel.
 
     Parameters
@@ -34,10 +34,10 @@ class Aggregation:
                 "of them. Try: aggsim.kernels.from_function(f, name='mine') for a function of two volumes."
             )
 
-    def terms(self, prepared: Any) -> list[Term]:
+    def terms(self, site: Site) -> list[Term]:
         """One term for each different factor in time among the parts of the kernel."""
         groups: list[tuple[Any, dict[str, FloatArray]]] = []
-        for name, matrix, strength in self.kernel.part_matrices(prepared.grid.volume):
+        for name, matrix, strength in site.prepared.parts(self.kernel):
             for known, parts in groups:
                 if known == strength:
                     parts[name] = matrix
@@ -45,5 +45,6 @@ class Aggregation:
             else:
                 groups.append((strength, {name: matrix}))
         return [
-            Term(prepared.aggregation(sum(parts.values())), strength, parts) for strength, parts in groups
+            Term(site.prepared.aggregation(sum(parts.values())), strength, parts)
+            for strength, parts in groups
         ]

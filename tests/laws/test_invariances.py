@@ -9,7 +9,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 from reference_runs import MONODISPERSE, brownian, settling, shear
-from scheme_cases import SCHEMES, grid_for
+from scheme_cases import NUMBER_KEEPING, SCHEMES, grid_for
 
 import aggsim as ag
 from aggsim.errors import AccuracyWarning
@@ -195,7 +195,7 @@ def test_output_times_do_not_change_the_run(scheme: ag.schemes.Scheme, split: fl
 # ---- what passes the top
 
 
-@pytest.mark.parametrize("scheme", SCHEMES, ids=repr)
+@pytest.mark.parametrize("scheme", NUMBER_KEEPING, ids=repr)
 def test_what_passes_the_top_is_accounted_for(scheme: ag.schemes.Scheme) -> None:
     """A grid that ends at 16 monomers, at a mean size of 6: volume is kept with the account, and so is number,
     of which every collision inside the grid takes one."""

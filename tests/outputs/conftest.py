@@ -1,4 +1,4 @@
-"""Results made by hand: lognormal distributions whose sizes, densities and shares are known in closed form."""
+"""Results made by hand, lognormal distributions that are known in closed form, and short runs of vessels."""
 
 from __future__ import annotations
 
@@ -8,7 +8,8 @@ from typing import Any
 import numpy as np
 import pytest
 
-from aggsim.result import Balance, Contributions, Outcome, Result, RunStatistics, Status
+import aggsim as ag
+from aggsim.result import Balance, Contributions, Outcome, Result, RunStatistics, Status, SteadyCurve
 from aggsim.sizes import SizeGrid
 
 GSD = 1.5
@@ -54,3 +55,44 @@ def make_result() -> Callable[..., Result]:
 @pytest.fixture
 def result() -> Result:
     return lognormal_result()
+
+
+FEED = ag.LogNormal(median_diameter=1e-6, gsd=1.5, volume_fraction=1e-4)
+KERNEL = ag.kernels.constant(1e-14)
+
+
+@pytest.fixture(scope="session")
+def train_run() -> Result:
+    """Three tanks of 100 s in series that start from clear liquid."""
+    train = ag.Train([ag.Tank(KERNEL, volume=10.0)] * 3, flow=0.1, feed=FEED)
+    return ag.simulate(train, None, np.linspace(0.0, 1200.0, 13))
+
+
+@pytest.fixture(scope="session")
+def tank_run() -> Result:
+    """A tank that starts full, is fed, overflows, settles at 1/3000 per second and is drawn off."""
+    losses = [
+        ag.SettlingOut(lambda v: np.full_like(v, 1e-3), depth=3.0),
+        ag.Withdrawal(rate=1e-4, name="beyond grid"),  # a name that other columns have too
+    ]
+    tank = ag.StirredTank(KERNEL, residence_time=600.0, feed=FEED, losses=losses)
+    return ag.simulate(tank, FEED, np.linspace(0.0, 1800.0, 13))
+
+
+def steady_tank(rate: float) -> ag.StirredTank:
+    breakage = ag.Breakage(
+        rate=ag.rates.power_law(coefficient=1e5 * rate, exponent=0.6),
+        fragments=ag.fragments.uniform_binary(),
+    )
+    return ag.StirredTank(KERNEL, residence_time=1200.0, feed=FEED, breakage=breakage)
+
+
+@pytest.fixture(scope="session")
+def curve() -> SteadyCurve:
+    """Steady states of a tank over a factor on its breakage rate."""
+    return ag.steady_states(steady_tank, [20.0, 60.0, 200.0, 600.0])
+
+
+@pytest.fixture
+def feed() -> ag.LogNormal:
+    return FEED

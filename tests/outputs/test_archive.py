@@ -33,6 +33,10 @@ def assert_same(a: Result, b: Result) -> None:
     assert a.balance.initial == b.balance.initial
     for name in ("present", "beyond_grid", "beyond_grid_number", "negative_share"):
         assert same_bits(getattr(a.balance, name), getattr(b.balance, name))
+    for way in ("inward", "outward"):
+        ours, theirs = getattr(a.balance, way), getattr(b.balance, way)
+        assert list(ours) == list(theirs)
+        assert all(same_bits(volume, theirs[name]) for name, volume in ours.items())
     assert list(a.contributions) == list(b.contributions)
     for name, part in a.contributions.items():
         for field in ("events", "volume_flux", "event_share", "volume_share"):
@@ -40,6 +44,9 @@ def assert_same(a: Result, b: Result) -> None:
     assert a.status == b.status
     assert a.stats == b.stats
     assert dict(a.settings) == dict(b.settings)
+    assert len(a.tanks) == len(b.tanks)
+    for ours, theirs in zip(a.tanks, b.tanks, strict=True):
+        assert_same(ours, theirs)
 
 
 def test_round_trip(result, tmp_path):
@@ -70,7 +77,15 @@ def test_round_trip_of_special_floats_and_texts(make_result, tmp_path):
         t,
         number=np.outer(SPECIAL, [1.0, 1.0]),
         grid=SizeGrid.from_pivots([1e-300, 1.0]),
-        balance=Balance(1e-5, SPECIAL, SPECIAL[::-1].copy(), SPECIAL, SPECIAL),
+        balance=Balance(
+            1e-5,
+            SPECIAL,
+            SPECIAL[::-1].copy(),
+            SPECIAL,
+            SPECIAL,
+            inward={"fed": SPECIAL, "": -SPECIAL, "inward_0": SPECIAL / 3},
+            outward={"fed": SPECIAL[::-1].copy(), "Σ \ud800\n/..\x00": SPECIAL},
+        ),
         contributions=Contributions({'"ä, µ"\n': (np.arange(7.0), np.arange(7.0) / 3)}),
         status=Status(Outcome.GELATION, 0.1 + 0.2, "Δt → 0", gelation_time=1 / 3),
         stats=RunStatistics(2**40, 1, 2, 3, 4, 0.1),
@@ -78,6 +93,67 @@ def test_round_trip_of_special_floats_and_texts(make_result, tmp_path):
     )
     save(run, tmp_path / "run")
     assert_same(load(tmp_path / "run"), run)
+
+
+def test_runs_with_streams_and_tanks_come_back(train_run, tank_run, tmp_path):
+    assert len(train_run.tanks) == 3
+    for run in (train_run, tank_run, train_run.tanks[1]):
+        save(run, tmp_path / "run")
+        assert_same(load(tmp_path / "run"), run)
+
+
+def test_tanks_may_have_tanks(make_result, tmp_path):
+    inner = make_result(tanks=(make_result(first=1e-7), make_result(parts=False)))
+    run = make_result(tanks=(inner, make_result(first=2e-7)))
+    save(run, tmp_path / "run")
+    assert_same(load(tmp_path / "run"), run)
+
+
+def test_file_of_version_1_is_read(make_result, tmp_path):
+    # as release 0.1.0 wrote it, before there were streams and tanks
+    t = np.array([0.0, 60.0])
+    header = {
+        "format": "aggsim result",
+        "format_version": 1,
+        "aggsim_version": "0.1.0",
+        "grid": {"ratio": 2.0, "monomer": None},
+        "balance": {"initial": 1e-5},
+        "contributions": ["shear"],
+        "status": {"outcome": "COMPLETED", "time": 60.0, "detail": "", "gelation_time": None},
+        "stats": {
+            "rate_evaluations": 10,
+            "jacobian_evaluations": 1,
+            "steps": 5,
+            "restarts": 0,
+            "grid_extensions": 0,
+            "seconds": 0.25,
+        },
+        "settings": {"method": "LSODA"},
+    }
+    stored = {
+        "times": t,
+        "grid_volume": np.array([1e-20, 2e-20, 4e-20]),
+        "number": np.array([[1e15, 0.0, 0.0], [5e14, 1e14, 7.5e13]]),
+        "balance_present": np.full(2, 1e-5),
+        "balance_beyond_grid": np.zeros(2),
+        "balance_beyond_grid_number": np.zeros(2),
+        "balance_negative_share": np.zeros(2),
+        "events_0": np.array([2e12, 1e12]),
+        "volume_flux_0": np.array([4e-8, 2e-8]),
+    }
+    path = tmp_path / "old.npz"
+    np.savez(path, header=np.frombuffer(json.dumps(header).encode(), np.uint8), **stored)
+    expected = Result(
+        times=t,
+        grid=SizeGrid(stored["grid_volume"], ratio=2.0),
+        number=stored["number"],
+        balance=Balance(1e-5, np.full(2, 1e-5), np.zeros(2), np.zeros(2), np.zeros(2)),
+        contributions=Contributions({"shear": (stored["events_0"], stored["volume_flux_0"])}),
+        status=Status(Outcome.COMPLETED, 60.0),
+        stats=RunStatistics(10, 1, 5, 0, 0, 0.25),
+        settings={"method": "LSODA"},
+    )
+    assert_same(load(path), expected)
 
 
 @pytest.mark.parametrize("outcome", list(Outcome))
@@ -225,6 +301,13 @@ CHANGES = {
     "version a text": lambda header, content: header.update(format_version="1"),
     "status missing": lambda header, content: header.pop("status"),
     "outcome unknown": lambda header, content: header["status"].update(outcome="LOST"),
+    "account not in the header": lambda header, content: header.pop("balance"),
+    "old version without an account": lambda header, content: (
+        header.update(format_version=1),
+        header.pop("balance"),
+    ),
+    "streams missing": lambda header, content: header["balance"].pop("inward"),
+    "tanks missing": lambda header, content: header.pop("tanks"),
     "count unknown": lambda header, content: header["stats"].update(more=1),
 }
 
@@ -233,6 +316,30 @@ CHANGES = {
 def test_inconsistent_content_is_called_damaged(result, tmp_path, change):
     path = tmp_path / "run.npz"
     save(result, path)
+    rewrite(path, change)
+    with pytest.raises(ArchiveError, match="damaged"):
+        load(path)
+
+
+TANK_CHANGES = {
+    "array of a tank missing": drop("tank_1_number"),
+    "stream missing": drop("inward_0"),
+    "stream of a tank missing": drop("tank_2_outward_0"),
+    "stream cut": lambda header, content: content.update(outward_0=content["outward_0"][1:]),
+    "tank of fewer times": lambda header, content: content.update(
+        {
+            name: array[1:]
+            for name, array in content.items()
+            if name.startswith("tank_0_") and name != "tank_0_grid_volume"
+        }
+    ),
+}
+
+
+@pytest.mark.parametrize("change", TANK_CHANGES.values(), ids=TANK_CHANGES.keys())
+def test_inconsistent_tanks_are_called_damaged(train_run, tmp_path, change):
+    path = tmp_path / "run.npz"
+    save(train_run, path)
     rewrite(path, change)
     with pytest.raises(ArchiveError, match="damaged"):
         load(path)

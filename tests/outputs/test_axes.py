@@ -105,3 +105,34 @@ def test_colours_are_distinct():
     # dark to bright: the order of times survives a grey print
     grey = [0.299 * r + 0.587 * g + 0.114 * b for r, g, b, _ in _axes.sequence(12)]
     assert (np.diff(grey) > 0.0).all()
+
+
+def test_size_axis_on_either_side():
+    _, ax = plt.subplots()
+    for part in (ax.xaxis, ax.yaxis):
+        unit = _axes.size_axis(part, 2e-6, 8e-6, None, "diameter")
+        assert (unit.size, part.get_label_text()) == (1e-6, "diameter [µm]")
+        assert part.get_scale() == "log"
+        np.testing.assert_allclose(part.get_view_interval(), [2.0, 8.0])
+    ax.plot([3.0], [3.0])
+    _axes.size_axis(ax.yaxis, 1e-6, 4e-6, None, "diameter")  # takes in what was drawn
+    np.testing.assert_allclose(ax.get_ylim(), [1.0, 8.0])
+    assert _axes.around(np.array([2e-6, 1e-6])) == pytest.approx((1e-6 / 1.1, 2.2e-6))
+
+
+def test_curves_have_looks_and_names_of_their_own():
+    looks = [_axes.look(k, 100) for k in range(8)]
+    assert len({look["color"] for look in looks}) == 8
+    assert "marker" not in looks[0]
+    assert _axes.look(0, 3)["marker"] == "o"
+    assert _axes.named("", ["a", "b"]) == ["a", "b"]
+    assert _axes.named("run", ["a", "b"]) == ["run, a", "run, b"]
+
+
+def test_a_legend_beside_the_axis_may_have_a_title():
+    _, ax = plt.subplots()
+    ax.plot([1.0], label="curve")
+    _axes.legend(ax, True, "at t = 5 min")
+    assert ax.get_legend().get_title().get_text() == "at t = 5 min"
+    _axes.legend(ax, False, "at t = 6 min")
+    assert ax.get_legend().get_title().get_text() == ""

@@ -83,6 +83,30 @@ def test_time_series_reads_back_exactly(result, tmp_path):
         np.testing.assert_array_equal(column[name], want, err_msg=name)
 
 
+def test_streams_have_columns(tank_run, tmp_path):
+    tables.summary_csv(tank_run, tmp_path / "series.csv")
+    _, header, values = read(tmp_path / "series.csv")
+    column = dict(zip(header, values.T, strict=True))
+    streams = [name for name in header if name.startswith(("inward", "outward"))]
+    assert streams == [
+        "inward fed [-]",
+        "outward settled [-]",
+        "outward beyond grid [-]",
+        "outward withdrawn [-]",
+    ]
+    np.testing.assert_array_equal(column["inward fed [-]"], tank_run.balance.inward["fed"])
+    for name, volume in tank_run.balance.outward.items():
+        np.testing.assert_array_equal(column[f"outward {name} [-]"], volume)
+
+
+def test_empty_outputs_have_sizes_that_are_nan(train_run, tmp_path):
+    tables.summary_csv(train_run, tmp_path / "series.csv")
+    _, header, values = read(tmp_path / "series.csv")
+    d50 = values[:, header.index("d50 [m]")]
+    assert np.isnan(d50[0])
+    np.testing.assert_array_equal(d50, train_run.quantile_diameter(0.5))
+
+
 def test_outer_diameters_are_named_so(result, tmp_path):
     tables.summary_csv(result, tmp_path / "series.csv", structure=Double())
     _, header, values = read(tmp_path / "series.csv")

@@ -10,7 +10,7 @@ import matplotlib.pyplot as plt
 import numpy as np
 import pytest
 
-from aggsim.errors import InputError
+from aggsim.errors import DistributionError, InputError
 from aggsim.outputs import figures
 from aggsim.result import Contributions
 from aggsim.sizes import SizeGrid
@@ -72,6 +72,35 @@ def test_any_spacing_of_times_can_be_drawn(make_result, draw, times):
 def test_drawing_library_is_imported_by_figures_alone():
     code = "import sys, aggsim.outputs; sys.exit(any(name.startswith('matplotlib') for name in sys.modules))"
     assert subprocess.run([sys.executable, "-c", code], check=False).returncode == 0
+
+
+@pytest.mark.parametrize("draw", DRAWERS.values(), ids=DRAWERS)
+def test_outputs_without_particles_are_left_out(train_run, draw):
+    assert not train_run.number[0].any()
+    ax = draw(train_run)
+    ax.figure.canvas.draw()
+    for line in ax.lines:
+        assert np.isfinite(np.asarray(line.get_ydata(), dtype=float)[1:]).all()
+
+
+def test_first_curve_is_that_of_the_first_particles(train_run):
+    assert labels(figures.distribution(train_run))[0] == "1.67 min"  # the second output, at 100 s
+    x, d50 = figures.sizes(train_run, shares=[0.5], means=(), unit=1e-6).lines[0].get_data()
+    np.testing.assert_allclose(d50, train_run.quantile_diameter(0.5) * 1e6, rtol=1e-12)
+    assert (x[0], np.isnan(d50[0])) == (0.0, True)
+
+
+@pytest.mark.parametrize("draw", [figures.distribution, figures.cumulative, figures.sizes, figures.number])
+def test_nothing_at_all_is_refused(make_result, draw):
+    empty = make_result(number=np.zeros((5, 101)), grid=SizeGrid.monomers(1e-20, 101))
+    with pytest.raises(DistributionError, match="no particles"):
+        draw(empty)
+    assert plt.get_fignums() == []
+
+
+def test_a_time_without_particles_is_refused(train_run):
+    with pytest.raises(DistributionError, match="no particles"):
+        figures.distribution(train_run, 0.0)
 
 
 # distribution

@@ -157,6 +157,59 @@ def test_outer_diameters_are_named_so(result):
     assert any("volume-equivalent diameter" in note for note in plain[2])
 
 
+def test_outputs_without_particles_have_no_sizes(train_run):
+    header, rows, _ = split(tables.summary(train_run))
+    assert rows[0] == ["0", "0.000e+00", *6 * ["-"], "0", "-"]
+    d50 = train_run.quantile_diameter(0.5)[2::2] * 1e6  # every other output is shown
+    np.testing.assert_allclose(column(rows[1:], 3), d50, rtol=5e-3)
+    assert header[1].split()[2] == "[um]"
+    nothing = tables.summary(train_run, times=0.0)
+    assert split(nothing)[1] == [["0", "0.000e+00", *6 * ["-"], "0", "-"]]
+
+
+def test_tanks_of_a_train(train_run):
+    header, rows, notes = split(tables.train(train_run, 310.0))
+    names = "tank number volume fraction d10 d50 d90 D[4,3] D[3,2] GSD leading mechanism"
+    assert header[0].split() == names.split()
+    assert header[1].split()[:6] == ["[1/m3]", "[-]", "[um]", "[um]", "[um]", "[um]"]
+    assert [row[0] for row in rows] == ["1", "2", "3"]
+    for row, tank in zip(rows, train_run.tanks, strict=True):
+        cells = [float(cell) for cell in row[1:9]]
+        want = [
+            tank.total_number()[3],
+            tank.moment(1)[3],
+            *(tank.quantile_diameter([0.1, 0.5, 0.9])[3] * 1e6),
+            tank.mean_diameter(4, 3)[3] * 1e6,
+            tank.mean_diameter(3, 2)[3] * 1e6,
+            tank.geometric_standard_deviation(0)[3],
+        ]
+        np.testing.assert_allclose(cells, want, rtol=5e-3)  # three figures shown
+        assert row[9:] == ["constant", "100", "%"]
+    assert notes[0] == "At t = 5 min."
+    assert notes[-1] == tables.CAUTION
+
+
+def test_tanks_that_are_empty_yet(train_run):
+    _, rows, _ = split(tables.train(train_run, 0.0))
+    assert rows == [[str(k), "0.000e+00", "0.000e+00", *7 * ["-"]] for k in (1, 2, 3)]
+
+
+def test_one_vessel_is_one_tank(result):
+    _, rows, _ = split(tables.train(result, structure=Double()))
+    _, last, _ = split(tables.summary(result, times=3600.0, structure=Double()))
+    assert rows[0][0] == "1"
+    assert rows[0][3:9] == last[0][2:8]
+
+
+def test_tanks_at_a_steady_state(curve):
+    header, rows, notes = split(tables.train(curve.states[1]))
+    assert len(rows) == 1
+    assert "leading" not in header[0]
+    assert float(rows[0][4]) == pytest.approx(curve.quantile_diameter(0.5)[1] * 1e6, rel=5e-3)
+    assert notes[0] == "At the steady state."
+    assert any(note.startswith("Steady state: stable") for note in notes)
+
+
 def test_contributions_by_part(result):
     header, rows, notes = split(tables.contributions(result))
     assert header[0].split() == ["time", "events", "brownian", "shear"]

@@ -104,3 +104,16 @@ def test_quantities_with_a_unit_are_understood(result):
             return 60.0 * self.value
 
     assert _units.chosen_times(result, Minutes(20.0), 5) == [2]
+
+
+def test_nearest_output_to_one_time(result):
+    assert _units.chosen_time(result, None) == 4
+    assert [_units.chosen_time(result, time) for time in (0.0, 899.0, 901.0, 3600.0)] == [0, 1, 2, 4]
+    for time, message in (
+        (-1.0, "0 to 3600 s"),
+        (3601.0, "0 to 3600 s"),
+        (np.nan, "finite"),
+        ("start", "finite"),
+    ):
+        with pytest.raises(TimesError, match=f"time=.* {message}"):
+            _units.chosen_time(result, time)

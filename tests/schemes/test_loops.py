@@ -9,7 +9,7 @@ import numpy as np
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
-from scheme_cases import discrete_equation, jacobian_of, rates_of, weak_form
+from scheme_cases import discrete_equation, fragment_sharing, jacobian_of, rates_of, weak_form
 
 import aggsim as ag
 
@@ -194,3 +194,67 @@ def test_a_number_that_is_not_finite_shows_in_the_sum_that_is_returned(bad: floa
             state = np.append(random.uniform(0.1, 1.0, n), [0.0, 0.0])
             state[k] = bad
             assert not np.isfinite(operator.add_rates(state, 1.0, np.zeros(n + 2)))
+
+
+# ---- breakage
+
+
+def fragments(random: np.random.Generator, x: Array) -> tuple[Array, Array, Array, Array]:
+    """A table of fragments: some parents do not break, some fragments are below the grid, some are pivots."""
+    rate = random.lognormal(0.0, 1.0, x.size) * (random.uniform(size=x.size) > 0.2)
+    parent = np.repeat(np.flatnonzero(rate), 9)
+    volume = x[parent] * random.uniform(0.0, 1.0, parent.size) ** random.choice([1.0, 4.0], parent.size)
+    on_pivot = random.uniform(size=parent.size) < 0.2
+    volume[on_pivot] = x[random.integers(0, parent[on_pivot] + 1)]
+    count = random.uniform(0.0, 1.0, parent.size)
+    total = np.bincount(parent, count * volume, x.size)
+    return rate, parent, volume, count * (x / np.maximum(total, 1e-300))[parent]
+
+
+@given(seed=seeds, ratios=steps, order=st.sampled_from([2, 4, 6]))
+def test_fragments_are_shared_as_a_plain_twin_shares_them(seed: int, ratios: list[float], order: int) -> None:
+    random = np.random.default_rng(seed)
+    grid = ag.SizeGrid.from_pivots(np.cumprod(ratios))
+    table = fragments(random, grid.volume)
+    operator = ag.FixedPivot(moments=order).prepare(grid).breakage(*table)
+    number = random.normal(0.0, 1.0, grid.sections)
+    number[random.integers(grid.sections) :] *= random.integers(2)  # now and then nothing above a size
+    matrix, gross = fragment_sharing(grid.volume, *table, order)
+    rates = rates_of(operator, number)
+    assert (np.abs(rates[:-2] - matrix @ number) <= 1e-13 * (gross @ np.abs(number))).all()
+    assert not rates[-2:].any()  # nothing is born above its parent
+    # linear: the Jacobian is the matrix, exactly
+    jacobian = jacobian_of(operator, number)
+    assert (np.abs(jacobian[:-2, :-2] - matrix) <= 1e-13 * gross).all()
+    assert not jacobian[-2:].any()
+    assert not jacobian[:, -2:].any()
+    columns = np.stack([rates_of(operator, unit) for unit in np.eye(grid.sections)], axis=1)
+    np.testing.assert_array_equal(columns, jacobian[:, :-2])
+
+
+def test_breakage_is_added_to_what_is_there() -> None:
+    random = np.random.default_rng(4)
+    grid = ag.SizeGrid.geometric(smallest=1.0, largest=64.0, per_doubling=2)
+    operator = ag.FixedPivot(moments=4).prepare(grid).breakage(*fragments(random, grid.volume))
+    n = grid.sections
+    state = np.append(random.uniform(0.0, 1.0, n), [5.0, 7.0, 9.0])  # and one stream
+    before = random.normal(size=n + 3)
+    out = before.copy()
+    total = operator.add_rates(state, 0.25, out)
+    once = rates_of(operator, state[:n])
+    np.testing.assert_allclose(out[:n], before[:n] + 0.25 * once[:n], rtol=1e-13, atol=1e-13)
+    np.testing.assert_array_equal(out[n:], before[n:])
+    assert np.isfinite(total)
+    matrix = random.normal(size=(n + 3, n + 3))
+    out = matrix.copy()
+    operator.add_jacobian(state, 0.25, out)
+    np.testing.assert_allclose(
+        out[:n, :n], matrix[:n, :n] + 0.25 * jacobian_of(operator, state[:n])[:n, :n], rtol=1e-13, atol=1e-13
+    )
+    np.testing.assert_array_equal(out[n:], matrix[n:])
+    for bad in (np.nan, np.inf):
+        for k in range(1, n):  # the first section does not break
+            broken = state.copy()
+            broken[k] = bad
+            if operator.matrix[k, k] != 0.0:
+                assert not np.isfinite(operator.add_rates(broken, 1.0, np.zeros(n + 3)))

@@ -9,7 +9,8 @@ from hypothesis import strategies as st
 from scheme_cases import operator_for, rates_of
 
 import aggsim as ag
-from aggsim.errors import GridError
+from aggsim.errors import GridError, KernelError
+from aggsim.schemes.low_rank import FactoredKernel
 
 
 @given(seed=st.integers(0, 2**32 - 1))
@@ -57,10 +58,46 @@ def test_other_grids_are_refused(grid: ag.SizeGrid) -> None:
         ag.Monomer().prepare(grid)
 
 
-def test_a_pair_matrix_that_does_not_fit_is_refused() -> None:
-    with pytest.raises(GridError, match=r"8001 sections.*8000.*Try"):
-        ag.Monomer().check(ag.SizeGrid.monomers(1.0, 8001))
-    ag.Monomer().check(ag.SizeGrid.monomers(1.0, 8000))
+def parts_of(kernel: ag.kernels.Kernel, sizes: int) -> list[tuple[str, object, object]]:
+    return list(ag.Monomer().prepare(ag.SizeGrid.monomers(1e-20, sizes)).parts(kernel))
+
+
+def test_few_sizes_are_summed_directly_and_many_convolved() -> None:
+    kernel = ag.kernels.constant(2.0) + ag.kernels.additive(3.0) * ag.kernels.Strength.steps(
+        [5.0], [1.0, 0.0]
+    )
+    for sizes, kind in ((1000, np.ndarray), (1001, FactoredKernel)):
+        parts = parts_of(kernel, sizes)
+        assert [(name, strength is None) for name, _, strength in parts] == [
+            ("constant", True),
+            ("additive", False),
+        ]
+        assert all(type(rates) is kind for _, rates, _ in parts)
+
+
+def test_both_ways_give_the_same_rates() -> None:
+    kernel = ag.kernels.constant(2.0) + ag.kernels.additive(3e20)
+    grid = ag.SizeGrid.monomers(1e-20, 1500)
+    prepared = ag.Monomer().prepare(grid)
+    number = np.random.default_rng(1).uniform(0.0, 1e15, 1500)
+    (_, first, _), (_, second, _) = prepared.parts(kernel)
+    matrices = sum(matrix for _, matrix, _ in kernel.part_matrices(grid.volume))
+    fast, direct = (rates_of(prepared.aggregation(rates), number) for rates in (first + second, matrices))
+    assert (np.abs(fast - direct)[:-1] <= 1e-13 * np.abs(direct[:-1]).max()).all()
+    assert fast[-1] == pytest.approx(direct[-1], rel=1e-13)
+
+
+def kinked(v: np.ndarray, w: np.ndarray) -> np.ndarray:
+    return 1.0 + np.abs(np.cbrt(v / 1e-20) - np.cbrt(w / 1e-20))
+
+
+def test_a_kernel_with_a_kink_is_summed_directly_while_its_matrix_fits() -> None:
+    kernel = ag.kernels.from_function(kinked, name="kinked") + ag.kernels.constant(1.0)
+    assert all(type(rates) is np.ndarray for _, rates, _ in parts_of(kernel, 1200))
+    with pytest.raises(
+        KernelError, match=r"kernel part 'kinked' is no sum of 40 products.*Try: fewer.*FixedPivot"
+    ):
+        parts_of(kernel, 8001)
 
 
 def test_the_default_grid_has_room_above_the_start() -> None:
@@ -71,6 +108,6 @@ def test_the_default_grid_has_room_above_the_start() -> None:
 
 
 def test_a_start_that_spans_too_many_multiples_is_refused() -> None:
-    wide = ag.Monodisperse(volume=1.0, number=1.0) + ag.Monodisperse(volume=1e4, number=1.0)
-    with pytest.raises(GridError, match=r"8000.*Try"):
+    wide = ag.Monodisperse(volume=1.0, number=1.0) + ag.Monodisperse(volume=2e4, number=1.0)
+    with pytest.raises(GridError, match=r"100000.*Try"):
         ag.Monomer().default_grid(wide)

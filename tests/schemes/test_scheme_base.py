@@ -3,12 +3,22 @@
 from __future__ import annotations
 
 import dataclasses
+from typing import Any
 
 import numpy as np
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
-from scheme_cases import ON_GEOMETRIC_GRIDS, SCHEMES, grid_for, jacobian_of, operator_for, rates_of
+from scheme_cases import (
+    LINEAR_IN_THE_KERNEL,
+    NUMBER_KEEPING,
+    ON_GEOMETRIC_GRIDS,
+    SCHEMES,
+    grid_for,
+    jacobian_of,
+    operator_for,
+    rates_of,
+)
 
 import aggsim as ag
 from aggsim.errors import GridError
@@ -104,7 +114,7 @@ def test_volume_is_kept_with_what_passes_the_top(
     assert abs(x @ rates[:-2] + rates[-1]) <= 1e-14 * moved
 
 
-@given(scheme=schemes, kernel=kernels, seed=seeds, per_doubling=st.integers(1, 4))
+@given(scheme=st.sampled_from(NUMBER_KEEPING), kernel=kernels, seed=seeds, per_doubling=st.integers(1, 4))
 def test_every_collision_takes_one_particle_with_what_passes_the_top(
     scheme: ag.schemes.Scheme, kernel: ag.kernels.Kernel, seed: int, per_doubling: int
 ) -> None:
@@ -127,7 +137,7 @@ def test_the_jacobian_keeps_volume_too(
     assert (np.abs(weights @ jacobian) <= 1e-14 * (np.abs(jacobian).T @ weights) * grid.sections).all()
 
 
-@given(scheme=schemes, seed=seeds, share=st.floats(0.0, 10.0))
+@given(scheme=st.sampled_from(LINEAR_IN_THE_KERNEL), seed=seeds, share=st.floats(0.0, 10.0))
 def test_the_operator_of_a_sum_of_kernels_is_the_sum_of_the_operators(
     scheme: ag.schemes.Scheme, seed: int, share: float
 ) -> None:
@@ -203,3 +213,80 @@ def test_the_continuation_covers_every_birth_with_room_for_the_stencil() -> None
             assert (np.diff(pivots) > 0.0).all()
             if grid.is_geometric:
                 np.testing.assert_allclose(pivots[1:] / pivots[:-1], grid.ratio, rtol=1e-12)
+
+
+# ---- breakage
+
+LINEAR = [ag.FixedPivot(moments=2), ag.FixedPivot(moments=4), ag.FixedPivot(moments=6), ag.Sectional()]
+LAWS = {
+    "uniform": ag.fragments.uniform_binary(),
+    "halves": ag.fragments.equal_binary(),
+    "thirds": ag.fragments.ternary(),
+    "erosion": ag.fragments.erosion(1.3),
+    "beta": ag.fragments.beta(shape=3.0),
+    "many": ag.fragments.power_law(exponent=-0.5),
+}
+laws = st.sampled_from(list(LAWS))
+
+
+def breaking(scheme: ag.schemes.Scheme, law: str, grid: ag.SizeGrid) -> tuple[Array, Any]:
+    """Matrix (n, n) [1/s] of a law at the rate v^(1/3), and its table."""
+    rate = ag.rates.power_law(coefficient=0.7, exponent=1.0 / 3.0)
+    table = ag.Breakage(rate=rate, fragments=LAWS[law]).table(grid.volume)
+    jacobian = jacobian_of(scheme.prepare(grid).breakage(*table), np.zeros(grid.sections))
+    return jacobian[:-2, :-2], table
+
+
+@given(scheme=st.sampled_from(LINEAR), law=laws, per_doubling=st.integers(1, 5))
+def test_breakage_keeps_volume_and_makes_the_pieces_of_its_law(
+    scheme: ag.schemes.Scheme, law: str, per_doubling: int
+) -> None:
+    """What is smaller than the first pivot counts there by volume, so there the number of pieces is smaller."""
+    grid = ag.SizeGrid.geometric(smallest=1.0, largest=300.0, per_doubling=per_doubling)
+    x = grid.volume
+    matrix, table = breaking(scheme, law, grid)
+    gross = np.abs(matrix).T @ x
+    assert (np.abs(x @ matrix) <= 1e-14 * gross).all()
+    assert not np.tril(matrix, -1).any()
+    counted = table.count * np.minimum(table.volume / x[0], 1.0)
+    pieces = np.bincount(table.parent, counted, x.size)
+    expected = table.rate * (pieces - 1.0)
+    expected[0] = 0.0  # all its fragments count as itself
+    assert (np.abs(matrix.sum(axis=0) - expected) <= 1e-12 * np.abs(matrix).sum(axis=0)).all()
+
+
+@given(moments=st.sampled_from([4, 6]), law=laws, per_doubling=st.integers(1, 5))
+def test_breakage_keeps_as_many_moments_as_the_scheme(moments: int, law: str, per_doubling: int) -> None:
+    """Of parents with enough pivots below them, and of the fragments that are on the grid."""
+    grid = ag.SizeGrid.geometric(smallest=1.0, largest=300.0, per_doubling=per_doubling)
+    x = grid.volume
+    matrix, table = breaking(ag.FixedPivot(moments=moments), law, grid)
+    small = table.volume <= x[0]
+    for k in np.arange(moments) * (0.5 if moments == 6 else 1.0):
+        made = np.where(small, table.volume / x[0] * x[0] ** k, table.volume**k)
+        expected = table.rate * (np.bincount(table.parent, table.count * made, x.size) - x**k)
+        gross = np.abs(matrix).T @ x**k
+        error = np.abs(x**k @ matrix - expected)[moments - 1 :]
+        assert (error <= 1e-12 * gross[moments - 1 :]).all()
+
+
+@pytest.mark.parametrize("scheme", LINEAR, ids=repr)
+def test_halves_on_a_doubling_grid_are_whole_particles(scheme: ag.schemes.Scheme) -> None:
+    grid = ag.SizeGrid.geometric(smallest=1.0, largest=256.0, per_doubling=1)
+    matrix, table = breaking(scheme, "halves", grid)
+    expected = np.diag(-table.rate) + np.diag(2.0 * table.rate[1:], 1)
+    expected[0, 0] = 0.0  # the smallest cannot get smaller
+    np.testing.assert_allclose(matrix, expected, rtol=1e-12, atol=1e-13)
+
+
+@pytest.mark.parametrize("scheme", LINEAR, ids=repr)
+def test_breakage_without_events_changes_nothing(scheme: ag.schemes.Scheme) -> None:
+    grid = ag.SizeGrid.geometric(smallest=1.0, largest=64.0, per_doubling=2)
+    law = ag.Breakage(
+        rate=ag.rates.power_law(coefficient=1.0, exponent=0.0),
+        fragments=ag.fragments.uniform_binary(),
+        smallest=100.0,
+    )
+    operator = scheme.prepare(grid).breakage(*law.table(grid.volume))
+    assert not rates_of(operator, np.ones(grid.sections)).any()
+    assert not jacobian_of(operator, np.ones(grid.sections)).any()

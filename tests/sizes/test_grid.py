@@ -66,6 +66,50 @@ def test_extension_keeps_the_pivots_and_the_rule(grid: ag.SizeGrid) -> None:
         assert longer.is_monomers
 
 
+@given(
+    grid=st.sampled_from(
+        [
+            ag.SizeGrid.geometric(smallest=1.0, largest=10.0, per_doubling=4),
+            ag.SizeGrid.geometric(smallest=1.0, largest=10.0, per_doubling=0.5),
+            ag.SizeGrid.monomers(1.0, 10),
+            ag.SizeGrid.monomers_then_geometric(1.0, 20.0, per_doubling=2),
+            ag.SizeGrid.from_pivots([1.0, 2.0, 5.0]),
+        ]
+    ),
+    smallest=st.floats(1e-9, 0.99),
+)
+def test_extension_downward_reaches_the_size_and_keeps_the_pivots(grid: ag.SizeGrid, smallest: float) -> None:
+    longer = grid.extended_down(smallest)
+    more = longer.sections - grid.sections
+    np.testing.assert_array_equal(longer.volume[more:], grid.volume)
+    assert longer.volume[0] == smallest
+    below = longer.volume[1 : more + 1] / longer.volume[:more]
+    # geometric, and no coarser than the top of the grid; a quarter of a doubling below whole monomers
+    assert np.ptp(below) <= 1e-12 * below[0]
+    finest = 2.0**0.25 if grid.ratio is None else grid.ratio
+    assert below[0] <= finest * (1.0 + 1e-9)
+    assert below[0] ** (more / (more - 1)) > finest * (1.0 - 1e-9) if more > 1 else below[0] > 1.0
+    # it can still be continued upward
+    top = 3.0 * float(grid.volume[-1])
+    higher = longer.extended(top)
+    np.testing.assert_array_equal(higher.volume[: longer.sections], longer.volume)
+    assert higher.volume[-1] >= top * (1 - 1e-12)
+
+
+def test_extension_downward_by_whole_sections_keeps_a_geometric_grid_geometric() -> None:
+    grid = ag.SizeGrid.geometric(smallest=1.0, largest=64.0, per_doubling=3)
+    longer = grid.extended_down(2.0**-7)
+    assert longer.sections == grid.sections + 21
+    assert longer.is_geometric
+    assert not ag.SizeGrid.monomers(1.0, 5).extended_down(0.5).is_monomers
+
+
+@pytest.mark.parametrize("smallest", [1.0, 2.0, 0.0, -1.0, np.nan, np.inf, "small"])
+def test_extension_downward_wants_a_smaller_size(smallest: object) -> None:
+    with pytest.raises(GridError, match=r"smallest=.*below 1"):
+        ag.SizeGrid.geometric(smallest=1.0, largest=10.0).extended_down(smallest)
+
+
 @given(st.floats(1e-27, 1e-3), st.floats(1.5, 1e9), st.floats(0.5, 12.0), st.floats(1.0, 1e6))
 def test_any_geometric_grid_is_increasing_and_extends(
     smallest: float, span: float, density: float, more: float

@@ -1,6 +1,7 @@
 from __future__ import annotations
 
 import dataclasses
+from importlib.util import find_spec
 
 import pytest
 
@@ -8,6 +9,8 @@ import aggsim as ag
 from aggsim.solvers.base import Method
 
 OFFERED = [v for v in vars(ag.methods).values() if isinstance(v, type) and v is not Method]
+if find_spec("sksundae") is None:
+    OFFERED.remove(ag.methods.CVODE)
 
 
 @pytest.mark.parametrize("kind", OFFERED, ids=lambda k: k.__name__)

@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 import aggsim as ag
-from aggsim.vessels import Aggregation, Process, Vessel, collision_rates
+from aggsim.vessels import Aggregation, Process, Site, Vessel, collision_rates
 
 GRID = ag.SizeGrid.geometric(smallest=1.0, largest=100.0, per_doubling=2)
 
@@ -32,7 +32,7 @@ def test_processes_add_up_and_simulate_takes_any_vessel() -> None:
 def rates_of(
     kernel: ag.kernels.Kernel, times: np.ndarray, number: np.ndarray
 ) -> tuple[np.ndarray, np.ndarray]:
-    terms = ag.Batch(kernel).terms(ag.FixedPivot(2).prepare(GRID))
+    terms = ag.Batch(kernel).terms(Site(ag.FixedPivot(2).prepare(GRID)))
     return collision_rates(terms, GRID.volume, times, number)["constant"]
 
 

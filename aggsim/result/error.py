@@ -1,0 +1,189 @@
+"""The numerical error of what a result reports, from runs that were made less exactly."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+from functools import cached_property
+from typing import Any
+
+import numpy as np
+
+from aggsim._checks import FloatArray
+from aggsim.errors import SimulationError
+from aggsim.result.readings import Readings
+from aggsim.sizes import SizeGrid
+
+FIGURES = ("number", "M2", "M3", "D[1,0]", "D[3,2]", "D[4,3]", "d10", "d50", "d90")
+"""The figures that an accuracy is asked for: number, moments, mean diameters, quantiles by volume."""
+
+
+def figures_of(state: Readings) -> dict[str, FloatArray]:
+    """Values (...) of all figures of a state."""
+    d10, d50, d90 = np.moveaxis(state.quantile_diameter(np.array([0.1, 0.5, 0.9])), -1, 0)
+    return {
+        "number": state.total_number(),
+        "M2": state.moment(2),
+        "M3": state.moment(3),
+        "D[1,0]": state.mean_diameter(1, 0),
+        "D[3,2]": state.mean_diameter(3, 2),
+        "D[4,3]": state.mean_diameter(4, 3),
+        "d10": d10,
+        "d50": d50,
+        "d90": d90,
+    }
+
+
+_NEAR = 1.5  # an error may pass zero; it counts as the largest within this factor in time
+
+
+@dataclass(frozen=True, eq=False)
+class Snapshot(Readings):
+    """Numbers (n_times, n_sections) [1/m3] on a grid."""
+
+    grid: SizeGrid
+    number: FloatArray
+
+    @cached_property
+    def figures(self) -> dict[str, FloatArray]:
+        """Values (n_times,) of all figures."""
+        return figures_of(self)
+
+    @classmethod
+    def of(cls, result: Any) -> Snapshot:
+        """The numbers of a Result."""
+        return cls(result.grid, result.number)
+
+    @classmethod
+    def with_top(cls, result: Any) -> Snapshot:
+        """The numbers of a Result, with what passed the top put back there by volume."""
+        number = np.array(result.number)
+        number[:, -1] += result.balance.beyond_grid / result.grid.volume[-1]
+        return cls(result.grid, number)
+
+
+@dataclass(frozen=True, eq=False)
+class Comparison:
+    """Two runs that differ in one respect, and how many times the difference exceeds the error of the result."""
+
+    cause: str
+    one: Snapshot
+    other: Snapshot
+    over: float
+
+    def error(self, first: FloatArray, second: FloatArray) -> FloatArray:
+        """Relative error of a reading of both runs."""
+        difference: FloatArray = np.abs(first - second) / np.abs(first) / self.over
+        return difference
+
+
+@dataclass(frozen=True, eq=False)
+class ErrorEstimate:
+    """Estimated relative error of every figure of a result, by cause.
+
+    `error["d50"]` is that of a figure in `FIGURES` (n_times,), `error.of(lambda r: r.moment(1.5))` that of any
+    other reading.
+
+    Attributes
+    ----------
+    times : (n_times,) s
+    comparisons : tuple of Comparison
+        What the estimate is made of. Causes: "size" (discretisation), "time" (integration), "top" (what passed
+        the top of the grid); "size and time" where one coarse run stands for both.
+    asked : float or None
+        The accuracy that was asked for.
+    runs : int
+        Runs that were made in all.
+    """
+
+    times: FloatArray
+    comparisons: tuple[Comparison, ...]
+    asked: float | None = None
+    runs: int = 1
+
+    def parts(self, read: Callable[[Readings], FloatArray]) -> dict[str, FloatArray]:
+        """Relative error (n_times,) of a reading by cause."""
+        return {c.cause: self._envelope(c.error(read(c.one), read(c.other))) for c in self.comparisons}
+
+    def of(self, read: Callable[[Readings], FloatArray]) -> FloatArray:
+        """Relative error (n_times,) of a reading, all causes together."""
+        total: FloatArray = np.sum(list(self.parts(read).values()), axis=0)
+        return total
+
+    def __getitem__(self, figure: str) -> FloatArray:
+        if figure not in FIGURES:
+            raise KeyError(
+                f"{figure!r} is not one of {list(FIGURES)}; error.of(read) takes any other reading"
+            )
+        total: FloatArray = np.sum(list(self._parts_of(figure).values()), axis=0)
+        return total
+
+    def _parts_of(self, figure: str) -> dict[str, FloatArray]:
+        """`parts` of a named figure, from readings that each run makes once."""
+        return {
+            c.cause: self._envelope(c.error(c.one.figures[figure], c.other.figures[figure]))
+            for c in self.comparisons
+        }
+
+    @property
+    def largest(self) -> float:
+        """The largest relative error of all figures at all times [1]."""
+        return max(float(np.nanmax(self[figure])) for figure in FIGURES)
+
+    @property
+    def met(self) -> bool:
+        """True where the accuracy that was asked for is met, or none was."""
+        return self.asked is None or self.largest <= self.asked
+
+    def by_cause(self) -> dict[str, float]:
+        """Largest relative error of all figures at all times by cause."""
+        out: dict[str, float] = {}
+        for figure in FIGURES:
+            for cause, values in self._parts_of(figure).items():
+                out[cause] = max(out.get(cause, 0.0), float(np.nanmax(values)))
+        return out
+
+    def _envelope(self, values: FloatArray) -> FloatArray:
+        """Largest value within a factor in time of each output."""
+        t = self.times
+        near = (t[None, :] <= _NEAR * t[:, None]) & (t[None, :] >= t[:, None] / _NEAR)
+        largest: FloatArray = np.where(near, np.nan_to_num(values)[None, :], 0.0).max(axis=1)
+        return largest
+
+    def __repr__(self) -> str:
+        figures = ", ".join(f"{name} {np.nanmax(self[name]):.1e}" for name in FIGURES)
+        causes = ", ".join(f"{cause} {value:.1e}" for cause, value in self.by_cause().items())
+        asked = (
+            "" if self.asked is None else f"; asked for {self.asked:g}: {'met' if self.met else 'NOT met'}"
+        )
+        return f"ErrorEstimate(largest: {figures}; by cause: {causes}; {self.runs} runs{asked})"
+
+
+class Later:
+    """An estimate that is made when it is asked for first, and kept."""
+
+    def __init__(self, source: ErrorEstimate | Callable[[], ErrorEstimate]) -> None:
+        """Take the estimate, or the function that makes it."""
+        self._source = source
+
+    @property
+    def ready(self) -> bool:
+        """True where the estimate is there already."""
+        return isinstance(self._source, ErrorEstimate)
+
+    def get(self) -> ErrorEstimate:
+        """The estimate."""
+        if not isinstance(self._source, ErrorEstimate):
+            self._source = self._source()
+        return self._source
+
+    def __getstate__(self) -> dict[str, Any]:
+        # what an estimate is made from (kernels, user functions) may not travel to another process
+        return {"_source": self._source if self.ready else _gone}
+
+
+def _gone() -> ErrorEstimate:
+    raise SimulationError(
+        "the error of this result was not estimated before it was saved or sent to another process. "
+        "Try: a look at `result.error` there."
+    )

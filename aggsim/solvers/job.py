@@ -1,0 +1,95 @@
+"""One simulation that can be carried out on any grid and at any tolerance."""
+
+from __future__ import annotations
+
+import time as clock
+from dataclasses import dataclass, replace
+from typing import Any
+
+import numpy as np
+
+from aggsim._checks import FloatArray
+from aggsim.result import Balance, Contributions, Result, RunStatistics, Status
+from aggsim.schemes import BEYOND, Scheme
+from aggsim.sizes import SizeGrid, StartingDistribution
+from aggsim.solvers.base import Method
+from aggsim.solvers.ladder import Ladder
+from aggsim.solvers.progress import progress_for
+from aggsim.solvers.run import Run
+from aggsim.solvers.setting import default_grid, project_or_none
+from aggsim.vessels import Stream, Vessel
+
+
+@dataclass(frozen=True, eq=False)
+class Job:
+    """Everything that makes a simulation, but its grid and its tolerance."""
+
+    vessel: Vessel
+    starts: list[StartingDistribution | None]
+    outputs: FloatArray
+    scheme: Scheme
+    method: Method
+
+    def grid(self, finer: float = 1.0) -> SizeGrid:
+        """The default grid, with `finer` times the usual sections per doubling."""
+        return default_grid(self.scheme, self.vessel, self.starts, finer)
+
+    def run(self, grid: SizeGrid, automatic: bool, rtol: float, progress: Any = False) -> Result:
+        """Result on a grid, which is continued upward where `automatic`."""
+        began = clock.perf_counter()
+        starts = np.array([project_or_none(self.scheme, one, grid) for one in self.starts])
+        shown = progress_for(progress)
+        ladder = Ladder(self.scheme, grid, automatic)
+        run = Run(self.vessel, self.scheme, self.method, ladder, starts, self.outputs, rtol, shown)
+        try:
+            status = run.execute()
+        finally:
+            shown.close()
+        return _result(run, status, self.scheme, self.method, rtol, clock.perf_counter() - began)
+
+
+def _result(run: Run, status: Status, scheme: Scheme, method: Method, rtol: float, seconds: float) -> Result:
+    grid, times, states = run.grid, run.times(), run.states()
+    shares = np.array(run.vessel.volumes)
+    stats = RunStatistics(
+        rate_evaluations=run.rate_evaluations,
+        jacobian_evaluations=run.jacobian_evaluations,
+        steps=run.steps,
+        restarts=run.restarts,
+        grid_extensions=run.extensions,
+        seconds=seconds,
+    )
+    settings = {"scheme": repr(scheme), "method": method.name, "rtol": f"{rtol:g}"}
+
+    def record(tank: int, balance: Balance, tanks: tuple[Result, ...] = ()) -> Result:
+        number = np.ascontiguousarray(states[:, tank, : grid.sections])
+        contributions = Contributions(run.collisions(tank))
+        return Result(times, grid, number, balance, contributions, status, stats, settings, tanks)
+
+    def account(weights: FloatArray, streams: list[Stream]) -> Balance:
+        """Balance of the tanks with these weights."""
+        together = np.einsum("i,tik->tk", weights, states)
+        initial = float(weights @ (run.starts @ run.ladder.whole.volume))
+        volume = np.einsum("i,tik->tk", weights, np.minimum(states[:, :, : grid.sections], 0.0) * grid.volume)
+        carried = {s: together[:, grid.sections + BEYOND + run.streams.index(s)].copy() for s in streams}
+        balance = Balance(
+            initial=initial,
+            present=together[:, : grid.sections] @ grid.volume,
+            beyond_grid=together[:, grid.sections + 1].copy(),
+            beyond_grid_number=together[:, grid.sections].copy(),
+            negative_share=np.zeros(times.size),
+            inward={s.name: v for s, v in carried.items() if s.inward},
+            outward={s.name: v for s, v in carried.items() if not s.inward},
+        )
+        return replace(balance, negative_share=-volume.sum(axis=1) / balance.scale)
+
+    whole = account(shares, [stream for stream in run.streams if not stream.internal])
+    if shares.size == 1:
+        return record(0, whole)
+    alone = np.eye(shares.size)
+    passing = [
+        [s for s in run.streams if states[:, k, grid.sections + BEYOND + run.streams.index(s)].any()]
+        for k in range(shares.size)
+    ]
+    tanks = tuple(record(k, account(alone[k], passing[k])) for k in range(shares.size))
+    return record(shares.size - 1, whole, tanks)
