@@ -240,7 +240,7 @@ for name, water in {"summer": summer, "winter": winter}.items():
     curve = ag.steady_states(lambda G, water=water: jar(G, water), SHEAR_RATES, start=raw_water)
     sizes, slope = 1e6 * curve.quantile_diameter(0.5, structure=flocs), curve.exponent(structure=flocs)
     print(f"{name:30s}" + "".join(f"{size:7.0f}" for size in sizes) + f"{slope.mean():7.2f}")
-    ag.figures.steady_size(curve, "G [1/s]", structure=flocs, name=name, ax=axis)
+    ag.figures.steady_size(curve, "G [1/s]", structure=flocs, label=name, ax=axis)
 print(f"slope from the laws: {-0.5 / (flocs.dimension - 1.0):.2f}")
 figure.savefig(OUTPUT / "taper_steady_size.png", dpi=100)
 

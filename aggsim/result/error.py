@@ -34,7 +34,11 @@ def figures_of(state: Readings) -> dict[str, FloatArray]:
     }
 
 
-_NEAR = 1.5  # an error may pass zero; it counts as the largest within this factor in time
+_NEAR = 1.2  # an error may pass zero; it counts as the largest within this factor in time
+# On a grid that begins with whole monomers quantiles are read across a change of spacing, where their error passes
+# zero from place to place: each counts as the largest of the three, within this factor in time, and half as much again
+_QUANTILES = ("d10", "d50", "d90")
+_NEAR_MONOMERS, _AT_MONOMERS = 2.1, 1.5
 
 
 @dataclass(frozen=True, eq=False)
@@ -90,6 +94,8 @@ class ErrorEstimate:
     comparisons : tuple of Comparison
         What the estimate is made of. Causes: "size" (discretisation), "time" (integration), "top" (what passed
         the top of the grid); "size and time" where one coarse run stands for both.
+    floor : float
+        What no estimate goes below: a small share of the tolerance of the integration.
     asked : float or None
         The accuracy that was asked for.
     runs : int
@@ -98,6 +104,7 @@ class ErrorEstimate:
 
     times: FloatArray
     comparisons: tuple[Comparison, ...]
+    floor: float = 0.0
     asked: float | None = None
     runs: int = 1
 
@@ -107,23 +114,27 @@ class ErrorEstimate:
 
     def of(self, read: Callable[[Readings], FloatArray]) -> FloatArray:
         """Relative error (n_times,) of a reading, all causes together."""
-        total: FloatArray = np.sum(list(self.parts(read).values()), axis=0)
-        return total
+        return self._sum(self.parts(read))
 
     def __getitem__(self, figure: str) -> FloatArray:
         if figure not in FIGURES:
-            raise KeyError(
-                f"{figure!r} is not one of {list(FIGURES)}; error.of(read) takes any other reading"
-            )
-        total: FloatArray = np.sum(list(self._parts_of(figure).values()), axis=0)
+            raise KeyError(f"{figure!r} is not one of {FIGURES}; error.of(read) takes any other reading")
+        return self._sum(self._parts_of(figure))
+
+    def _sum(self, parts: dict[str, FloatArray]) -> FloatArray:
+        total: FloatArray = np.sum(list(parts.values()), axis=0) + self.floor
         return total
 
     def _parts_of(self, figure: str) -> dict[str, FloatArray]:
         """`parts` of a named figure, from readings that each run makes once."""
-        return {
-            c.cause: self._envelope(c.error(c.one.figures[figure], c.other.figures[figure]))
-            for c in self.comparisons
-        }
+        out = {}
+        for c in self.comparisons:
+            if figure in _QUANTILES and c.one.grid.monomer is not None and c.cause != "top":
+                errors = [c.error(c.one.figures[q], c.other.figures[q]) for q in _QUANTILES]
+                out[c.cause] = self._envelope(_AT_MONOMERS * np.max(errors, axis=0), _NEAR_MONOMERS)
+            else:
+                out[c.cause] = self._envelope(c.error(c.one.figures[figure], c.other.figures[figure]))
+        return out
 
     @property
     def largest(self) -> float:
@@ -143,10 +154,10 @@ class ErrorEstimate:
                 out[cause] = max(out.get(cause, 0.0), float(np.nanmax(values)))
         return out
 
-    def _envelope(self, values: FloatArray) -> FloatArray:
+    def _envelope(self, values: FloatArray, factor: float = _NEAR) -> FloatArray:
         """Largest value within a factor in time of each output."""
         t = self.times
-        near = (t[None, :] <= _NEAR * t[:, None]) & (t[None, :] >= t[:, None] / _NEAR)
+        near = (t[None, :] <= factor * t[:, None]) & (t[None, :] >= t[:, None] / factor)
         largest: FloatArray = np.where(near, np.nan_to_num(values)[None, :], 0.0).max(axis=1)
         return largest
 

@@ -2,8 +2,7 @@
 
 The error of discretisation is judged by a coarser grid, that of integration by a looser tolerance, and what
 passed the top by putting it back there. How many times the error of the result a difference exceeds is taken
-from the order of the scheme, on the safe side: kinks in a kernel or a start lower the order to 2, so a scheme of
-fourth or sixth order is trusted with less than its order.
+from the order of the scheme, 2 where a kernel or a start has kinks, and on the safe side where it is higher.
 """
 
 from __future__ import annotations
@@ -19,7 +18,7 @@ from aggsim.solvers.ladder import LARGEST_AUTOMATIC_GRID
 
 COARSE = 2.0  # ratio of spacings between a result and the one coarse run of a quick estimate
 LOOSE = 30.0  # ratio of their tolerances
-OVER = 10.0  # taken for the ratio of their errors, less 1: between 3 (second order) and 63 (sixth)
+OVER = 16.0  # ratio of their errors, less 1, on the safe side of sixth order (63); 3 of second order
 
 STEP = math.sqrt(2.0)  # ratio of spacings between runs of a refinement
 TIGHTER = 8.0  # ratio of tolerances, whose errors are taken to differ by
@@ -27,6 +26,8 @@ TIME_OVER = 3.0  # times, less 1
 TRUSTED_ORDER = 4.0  # of a scheme of higher order
 FIRST_TOLERANCE = 1e-2  # rtol over the accuracy that is asked for
 MOST_RUNS = 24
+FINEST = 12.0  # times the usual sections per doubling
+FLOOR = 3e-3  # of rtol: what no estimate goes below
 FIRST_ERROR = 3e-4  # what half the usual sections per doubling are good for
 
 
@@ -44,18 +45,21 @@ def estimated(job: Job, result: Result, grid: SizeGrid | None, rtol: float) -> E
             f"the coarse run of the error estimate ended early: {coarse.status} Try: a finer grid, or accuracy=1e-3.",
             coarse,
         )
-    over = min(OVER, COARSE**job.scheme.order - 1.0)
+    over = min(OVER, COARSE ** job.order(result.grid) - 1.0)
     cause = "size and time" if sized else "time"
     one = Snapshot.of(result)
     comparisons = (Comparison(cause, one, Snapshot.of(coarse), over), _top(one, result))
-    return ErrorEstimate(result.times, comparisons, runs=2)
+    return ErrorEstimate(result.times, comparisons, FLOOR * rtol, runs=2)
 
 
 def refined(job: Job, accuracy: float, progress: object) -> Result:
     """Result whose estimated error is below `accuracy`, or the best that can be had."""
-    order = min(job.scheme.order, TRUSTED_ORDER)
-    sized = math.isfinite(job.scheme.order)
-    finer = 0.5 * max(1.0, (FIRST_ERROR / accuracy) ** (1.0 / min(job.scheme.order, 6.0))) if sized else 1.0
+    full = job.order(job.grid())
+    order = min(full, TRUSTED_ORDER)
+    sized = math.isfinite(full)
+    single = any(law is not None and law.atoms for law in (*job.starts, *job.vessel.feeds))
+    coarsest = 1.0 / STEP if single else 0.5  # single sizes need some sections around them to be run at all
+    finer = max(coarsest, 0.5 * (FIRST_ERROR / accuracy) ** (1.0 / min(full, 6.0))) if sized else 1.0
     rtol = max(FIRST_TOLERANCE * accuracy, 1e-12)
     best: tuple[float, Result] | None = None
     runs, known = 0, {}
@@ -82,7 +86,7 @@ def refined(job: Job, accuracy: float, progress: object) -> Result:
         one, other = Snapshot.of(fine), Snapshot.of(coarse)
         size = (Comparison("size", one, other, STEP**order - 1.0),) if sized else ()
         time = Comparison("time", other, Snapshot.of(loose), TIME_OVER)
-        error = ErrorEstimate(fine.times, (*size, time, _top(one, fine)), accuracy, runs)
+        error = ErrorEstimate(fine.times, (*size, time, _top(one, fine)), FLOOR * rtol, accuracy, runs)
         largest = error.largest
         if best is None or largest < best[0]:
             best = largest, _with(fine, error)
@@ -94,6 +98,8 @@ def refined(job: Job, accuracy: float, progress: object) -> Result:
         if sized and causes["size"] > 0.5 * accuracy:
             wanted = (2.0 * causes["size"] / accuracy) ** (1.0 / order)
             finer *= STEP ** max(1, min(2, math.ceil(math.log(wanted) / math.log(STEP))))
+            if finer > FINEST or job.grid(finer).sections > LARGEST_AUTOMATIC_GRID:
+                break
         elif causes["time"] <= 0.3 * accuracy:
             break  # what passed the top remains
     assert best is not None, "a run that was completed stands here"

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import time as clock
 from dataclasses import dataclass, replace
 from typing import Any
@@ -33,6 +34,16 @@ class Job:
     def grid(self, finer: float = 1.0) -> SizeGrid:
         """The default grid, with `finer` times the usual sections per doubling."""
         return default_grid(self.scheme, self.vessel, self.starts, finer)
+
+    def order(self, grid: SizeGrid) -> float:
+        """Order of convergence on a grid: that of the scheme, or 2 where a kernel or a start has kinks."""
+        sharp = any(law is not None and law.breaks for law in (*self.starts, *self.vessel.feeds))
+        smooth = not sharp and all(span.vessel.smooth(grid.volume) for span in self.vessel.spans)
+        return (
+            self.scheme.order
+            if smooth or not math.isfinite(self.scheme.order)
+            else min(self.scheme.order, 2.0)
+        )
 
     def run(self, grid: SizeGrid, automatic: bool, rtol: float, progress: Any = False) -> Result:
         """Result on a grid, which is continued upward where `automatic`."""

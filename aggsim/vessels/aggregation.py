@@ -5,9 +5,15 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Any
 
+import numpy as np
+
 from aggsim._checks import FloatArray
 from aggsim.errors import InputError
 from aggsim.vessels.base import Process, Site, Term
+
+_LOOKED_AT = 40  # pivots at which a kernel is looked at for a kink
+_STEP = 1e-3  # in the logarithm of volume
+_SEEN = 1e-7  # bend that is more than round-off
 
 
 @dataclass(frozen=True)
@@ -48,3 +54,19 @@ class Aggregation(Process):
             Term(site.prepared.aggregation(sum(parts.values())), strength, parts)
             for strength, parts in groups
         ]
+
+    def smooth(self, volume: FloatArray) -> bool:
+        """False where the kernel has a kink at equal sizes, as differential settling has.
+
+        Over a step d in ln w the sum K(v, w e**d) + K(v, w e**-d) - 2 K(v, v) grows with d**2 where the kernel is
+        smooth and with d where it has a kink.
+        """
+        v = volume[:: max(1, volume.size // _LOOKED_AT)]
+
+        def bend(step: float) -> FloatArray:
+            middle = np.asarray(self.kernel(v, v))
+            up, down = (np.asarray(self.kernel(v, v * np.exp(sign * step))) for sign in (1.0, -1.0))
+            return np.asarray(np.abs(up + down - 2.0 * middle) / (up + down + middle))
+
+        narrow, wide = bend(_STEP), bend(2.0 * _STEP)
+        return not bool(((wide > _SEEN) & (wide < 3.0 * narrow)).any())

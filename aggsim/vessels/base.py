@@ -108,6 +108,10 @@ class Process(ABC):
         """Volume [m3] of the smallest pieces that the process makes; infinitely small ones are 0, none None."""
         return None
 
+    def smooth(self, volume: FloatArray) -> bool:
+        """False where a rate has a kink among the volumes (n,) [m3], which lowers the order of schemes to 2."""
+        return True
+
 
 @dataclass(frozen=True)
 class Span:
@@ -155,6 +159,10 @@ class Vessel(ABC):
     def feeds(self) -> tuple[StartingDistribution, ...]:
         """Distributions that come in on the way."""
         return tuple(feed for process in self.processes for feed in process.feeds)
+
+    def smooth(self, volume: FloatArray) -> bool:
+        """False where a rate has a kink among the volumes (n,) [m3]."""
+        return all(process.smooth(volume) for process in self.processes)
 
     @property
     def smallest(self) -> float | None:
