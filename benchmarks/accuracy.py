@@ -9,10 +9,11 @@ from __future__ import annotations
 
 import itertools
 import warnings
+from pathlib import Path
 from typing import Any
 
 import numpy as np
-from _common import BROWNIAN, MONOMERS, machine, mineral, one_thread, seconds, table, target
+from _common import BROWNIAN, MONOMERS, machine, one_thread, seconds, table, target
 
 import aggsim as ag
 from aggsim.errors import AggsimError
@@ -107,28 +108,48 @@ def main() -> None:
     demo()
 
 
+TABLE = ("number", "D[3,2]", "D[4,3]", "d10", "d50", "d90")  # what tables.summary shows
+
+
 def demo() -> None:
-    """The default run of three mechanisms, with its estimate."""
-    _, kernel = mineral("fractal")
-    start = ag.LogNormal(median_diameter=4e-6, gsd=1.6, volume_fraction=2e-5)
-    vessel, times = ag.Batch(kernel), np.linspace(0.0, 600.0, 11)
+    """The default run of the first demonstration (measured raw water, three mechanisms), with its estimate."""
+    data = Path(__file__).resolve().parent.parent / "notebooks_demo" / "data" / "raw_water.csv"
+    table_of = {
+        "size_unit": "um",
+        "size": (0, 1),
+        "value": 2,
+        "kind": "volume",
+        "form": "fraction",
+        "percent": True,
+    }
+    start = ag.Measured.from_csv(data, **table_of, mass_concentration=0.060, density=2400.0)
+    water = ag.Medium.water(temperature=285.15)
+    flocs = ag.Fractal(ag.Particles(diameter=3e-6, density=2400.0), dimension=2.5)
+    kernel = ag.kernels.brownian(flocs, water) + ag.kernels.settling(flocs, water)
+    kernel = 0.5 * (kernel + ag.kernels.shear(flocs, ag.Flow(shear_rate=40.0)))
+    vessel, times = ag.Batch(kernel), np.linspace(0.0, 1800.0, 31)
 
-    def run() -> Any:
-        result = ag.simulate(vessel, start, times)
-        return result, result.error.largest
-
-    def bare() -> Any:
+    def bare() -> ag.Result:
         return ag.simulate(vessel, start, times)
 
-    result, estimate = run()
-    both, alone = seconds(run, bare, repeats=7)
-    coarse = 100.0 * (both / alone - 1.0)
+    def with_coarse_run() -> Any:
+        return bare().error
+
+    def with_figures() -> float:
+        return bare().error.largest
+
+    error = with_coarse_run()
+    largest = max(float(error[figure].max()) for figure in TABLE)
+    alone, coarse, read = seconds(bare, with_coarse_run, with_figures, repeats=9)
     print(
-        f"\nthree mechanisms, no numerical option: estimated error {estimate:.1e}, {1e3 * both:.1f} ms with the "
-        f"estimate, {1e3 * alone:.1f} ms without ({coarse:.0f} % more, readings of nine figures included)"
+        f"\nfirst demonstration, no numerical option: {1e3 * alone:.1f} ms; with the coarse run of the estimate "
+        f"{1e3 * coarse:.1f} ms ({100.0 * (coarse / alone - 1.0):.0f} % more), with nine figures read at 31 times from "
+        f"both {1e3 * read:.1f} ms; M2 and M3, which hang on 1e-6 of the volume under settling: "
+        f"{float(error['M2'].max()):.0e} and {float(error['M3'].max()):.0e}"
     )
-    target("estimated error of the default run", estimate, 5e-3, at_most=True)
-    target("time of the default run with its estimate [ms]", 1e3 * both, 50.0, at_most=True)
+    target("largest estimated error of the figures in its table", largest, 5e-3, at_most=True)
+    target("time of the run with its estimate [ms]", 1e3 * read, 50.0, at_most=True)
+    target("coarse run of the estimate over the run [%]", 100.0 * (coarse / alone - 1.0), 30.0, at_most=True)
 
 
 if __name__ == "__main__":

@@ -120,8 +120,9 @@ def floc_strength(
     """Rate from the stress of the flow over the strength of a floc, which falls with its size.
 
     S = e G (d/d_p - 1)**p (mu G/tau)**q, with collision diameter d, primary diameter d_p, and a floc strength
-    tau = F/d**2 that goes back to one yield force F [1]_. Primary particles do not break. Form and default
-    exponents were written down from memory of the source.
+    tau = F/d**2 that goes back to one yield force F [1]_. Primary particles do not break. Strength and efficiency
+    act together, as e tau**-q, so data on sizes cannot tell them apart. Form and default exponents were written
+    down from memory of the source.
 
     Parameters
     ----------

@@ -91,7 +91,14 @@ def chosen_times(result: Result, times: Any, at_most: int) -> list[int]:
 
     Raises TimesError for a time before the first or after the last output.
     """
-    known = result.times
+    known = getattr(result, "times", None)
+    if known is None:
+        _checks.refuse(
+            "result",
+            f"a {type(result).__name__}",
+            "the Result of simulate",
+            "figures.train and tables.train, which take a steady state too",
+        )
     if times is None:
         return evenly(known.size, at_most)
     raw = _checks.plain(times, "s")

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from functools import cached_property
 from typing import Any
 
@@ -59,11 +59,24 @@ class Snapshot(Readings):
         return cls(result.grid, result.number)
 
     @classmethod
-    def with_top(cls, result: Any) -> Snapshot:
-        """The numbers of a Result, with what passed the top put back there by volume."""
-        number = np.array(result.number)
-        number[:, -1] += result.balance.beyond_grid / result.grid.volume[-1]
-        return cls(result.grid, number)
+    def without_and_with_top(cls, result: Any) -> tuple[Snapshot, Snapshot]:
+        """The numbers of a Result, and those with what passed the top put back there by volume."""
+        number = np.array([result.number, result.number])
+        number[1, :, -1] += result.balance.beyond_grid / result.grid.volume[-1]
+        both = cls(result.grid, number)  # read together, which takes little longer than one
+        return _Part(result.grid, number[0], both, 0), _Part(result.grid, number[1], both, 1)
+
+
+@dataclass(frozen=True, eq=False)
+class _Part(Snapshot):
+    """One of several snapshots on a grid that are read together."""
+
+    whole: Snapshot
+    place: int
+
+    @cached_property
+    def figures(self) -> dict[str, FloatArray]:
+        return {name: values[self.place] for name, values in self.whole.figures.items()}
 
 
 @dataclass(frozen=True, eq=False)
@@ -92,8 +105,11 @@ class ErrorEstimate:
     ----------
     times : (n_times,) s
     comparisons : tuple of Comparison
-        What the estimate is made of. Causes: "size" (discretisation), "time" (integration), "top" (what passed
-        the top of the grid); "size and time" where one coarse run stands for both.
+        What the estimate is made of. Causes: "size and time" (one coarse run stands for both) and "top" (what
+        passed the top of the grid).
+    apart : callable
+        Makes the comparisons with the causes "size" (discretisation) and "time" (integration) apart, which takes
+        one more coarse run.
     floor : float
         What no estimate goes below: a small share of the tolerance of the integration.
     asked : float or None
@@ -104,31 +120,37 @@ class ErrorEstimate:
 
     times: FloatArray
     comparisons: tuple[Comparison, ...]
+    apart: Callable[[], tuple[Comparison, ...]] | None = field(default=None, repr=False)
     floor: float = 0.0
     asked: float | None = None
     runs: int = 1
 
     def parts(self, read: Callable[[Readings], FloatArray]) -> dict[str, FloatArray]:
-        """Relative error (n_times,) of a reading by cause."""
-        return {c.cause: self._envelope(c.error(read(c.one), read(c.other))) for c in self.comparisons}
+        """Relative error (n_times,) of a reading by cause; the first call makes one more coarse run."""
+        return {c.cause: self._envelope(c.error(read(c.one), read(c.other))) for c in self._separate}
 
     def of(self, read: Callable[[Readings], FloatArray]) -> FloatArray:
         """Relative error (n_times,) of a reading, all causes together."""
-        return self._sum(self.parts(read))
+        pairs = self.comparisons
+        return self._sum({c.cause: self._envelope(c.error(read(c.one), read(c.other))) for c in pairs})
 
     def __getitem__(self, figure: str) -> FloatArray:
         if figure not in FIGURES:
             raise KeyError(f"{figure!r} is not one of {FIGURES}; error.of(read) takes any other reading")
-        return self._sum(self._parts_of(figure))
+        return self._sum(self._parts_of(figure, self.comparisons))
+
+    @cached_property
+    def _separate(self) -> tuple[Comparison, ...]:
+        return self.comparisons if self.apart is None else self.apart()
 
     def _sum(self, parts: dict[str, FloatArray]) -> FloatArray:
         total: FloatArray = np.sum(list(parts.values()), axis=0) + self.floor
         return total
 
-    def _parts_of(self, figure: str) -> dict[str, FloatArray]:
+    def _parts_of(self, figure: str, pairs: tuple[Comparison, ...]) -> dict[str, FloatArray]:
         """`parts` of a named figure, from readings that each run makes once."""
         out = {}
-        for c in self.comparisons:
+        for c in pairs:
             if figure in _QUANTILES and c.one.grid.monomer is not None and c.cause != "top":
                 errors = [c.error(c.one.figures[q], c.other.figures[q]) for q in _QUANTILES]
                 out[c.cause] = self._envelope(_AT_MONOMERS * np.max(errors, axis=0), _NEAR_MONOMERS)
@@ -136,10 +158,15 @@ class ErrorEstimate:
                 out[c.cause] = self._envelope(c.error(c.one.figures[figure], c.other.figures[figure]))
         return out
 
-    @property
+    @cached_property
     def largest(self) -> float:
         """The largest relative error of all figures at all times [1]."""
         return max(float(np.nanmax(self[figure])) for figure in FIGURES)
+
+    @property
+    def worst(self) -> str:
+        """The figure with the largest error."""
+        return max(FIGURES, key=lambda figure: float(np.nanmax(self[figure])))
 
     @property
     def met(self) -> bool:
@@ -147,15 +174,17 @@ class ErrorEstimate:
         return self.asked is None or self.largest <= self.asked
 
     def by_cause(self) -> dict[str, float]:
-        """Largest relative error of all figures at all times by cause."""
+        """Largest relative error of all figures at all times by cause; the first call makes one more coarse run."""
         out: dict[str, float] = {}
         for figure in FIGURES:
-            for cause, values in self._parts_of(figure).items():
+            for cause, values in self._parts_of(figure, self._separate).items():
                 out[cause] = max(out.get(cause, 0.0), float(np.nanmax(values)))
         return out
 
     def _envelope(self, values: FloatArray, factor: float = _NEAR) -> FloatArray:
         """Largest value within a factor in time of each output."""
+        if not values.any():
+            return np.zeros_like(values)
         t = self.times
         near = (t[None, :] <= factor * t[:, None]) & (t[None, :] >= t[:, None] / factor)
         largest: FloatArray = np.where(near, np.nan_to_num(values)[None, :], 0.0).max(axis=1)
@@ -163,11 +192,14 @@ class ErrorEstimate:
 
     def __repr__(self) -> str:
         figures = ", ".join(f"{name} {np.nanmax(self[name]):.1e}" for name in FIGURES)
-        causes = ", ".join(f"{cause} {value:.1e}" for cause, value in self.by_cause().items())
         asked = (
             "" if self.asked is None else f"; asked for {self.asked:g}: {'met' if self.met else 'NOT met'}"
         )
-        return f"ErrorEstimate(largest: {figures}; by cause: {causes}; {self.runs} runs{asked})"
+        return f"ErrorEstimate(largest: {figures}; {self.runs} runs{asked})"
+
+    def __getstate__(self) -> dict[str, Any]:
+        # what further runs are made from may not travel to another process
+        return {**self.__dict__, "apart": None}
 
 
 class Later:

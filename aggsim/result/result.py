@@ -3,10 +3,11 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
 from scipy.interpolate import PchipInterpolator
 from scipy.optimize import brentq
 
@@ -93,8 +94,12 @@ class Result(Readings):
         Between outputs a monotone cubic is drawn (Fritsch and Carlson 1980, doi:10.1137/0717021), so the output
         times set the accuracy.
         """
-        y = _checks.array("quantity", quantity, size=self.times.size)
         level = _checks.scalar("value", value)
+        y = np.array(quantity, dtype=np.float64)
+        known = ~np.isnan(y)  # a tank that is still empty has no size
+        if y.shape == self.times.shape and not known.all():
+            return self._among(known).first_time(y[known], value) if known.sum() > 1 else float("nan")
+        y = _checks.array("quantity", quantity, size=self.times.size)
         side = np.sign(y - level)
         hits = np.flatnonzero((side[1:] != side[:-1]) | (side[1:] == 0))
         if side[0] == 0:
@@ -108,9 +113,15 @@ class Result(Readings):
         low, high = float(self.times[k]), float(self.times[k + 1])
         return float(brentq(lambda t: float(curve(t)), low, high, xtol=1e-12 * high))
 
+    def _among(self, outputs: NDArray[np.bool_]) -> Result:
+        """The same with some of the outputs alone."""
+        return replace(self, times=self.times[outputs], number=self.number[outputs], tanks=())
+
     def number_half_life(self) -> float:
         """Time [s] at which half of the particles that were there at the first output are left, NaN if never."""
         total = self.total_number()
+        if not total[0] > 0.0:
+            return float("nan")
         return self.first_time(total, 0.5 * float(total[0]))
 
     def __repr__(self) -> str:

@@ -17,6 +17,7 @@ from aggsim.errors import GridError
 
 _NEGATIVE_SHARE = 5e-3  # a spline that undershoots more than this does not resolve the distribution
 _SUM_DIFFERS = 1e-2  # nor does one whose integral differs by more from the sum over the sections
+_STEPS = 14  # of Newton's method with halving; a cubic needs some 6, a bend at an end a few more
 _HALVINGS = 48  # bisections of one section: kappa to 4e-15
 _WILD_BEND = 3.0  # half the change of bend along a section; from 4 on the curve would not rise everywhere
 
@@ -148,17 +149,23 @@ class Cumulative:
         climbed = np.maximum.accumulate(self.reached, axis=-1)
         piece = (climbed[:, None, 1:-1] < p[None, :, None]).sum(axis=-1)
         knots = np.broadcast_to(self.knots, self.reached.shape)
-        low, width = knots[rows, piece], knots[rows, piece + 1] - knots[rows, piece]
-        offset = low - self.origin[piece]
-        powers = [power[rows, piece] for power in self.power]  # looked up once, not at every halving
-        for _ in range(_HALVINGS):
-            width = 0.5 * width
-            middle = offset + width
-            value = powers[0]
+        low, high = knots[rows, piece], knots[rows, piece + 1]
+        origin = self.origin[piece]
+        low, high = low - origin, high - origin
+        powers = [power[rows, piece] for power in self.power]  # looked up once, not at every step
+        offset = 0.5 * (low + high)
+        for _ in range(_STEPS):
+            value, slope = powers[0], np.zeros_like(offset)
             for power in powers[1:]:
-                value = value * middle + power
-            offset = np.where(value < p, middle, offset)
-        return np.asarray(self.origin[piece] + offset + 0.5 * width)
+                slope = slope * offset + value
+                value = value * offset + power
+            short = value < p
+            low, high = np.where(short, offset, low), np.where(short, high, offset)
+            # Newton's step where it stays inside, halving elsewhere
+            with np.errstate(divide="ignore", invalid="ignore"):
+                step = offset - (value - p) / slope
+            offset = np.where((step >= low) & (step <= high), step, 0.5 * (low + high))
+        return np.asarray(origin + offset)
 
     def _value(self, piece: NDArray[np.intp], kappa: FloatArray) -> FloatArray:
         rows = np.arange(self.reached.shape[0])[:, None]

@@ -37,8 +37,8 @@ def steady_state(
     vessel : Vessel
         A batch with breakage, a stirred tank or a train, with nothing that changes in time.
     start : StartingDistribution, optional
-        What a vessel without streams holds: its particle volume is the one that stays. A vessel that is fed
-        needs none.
+        What a vessel without streams holds: its particle volume is the one that stays. For a vessel that is fed it
+        is a first guess, and the feed is one without it.
     grid : SizeGrid, optional
         Pivots. Without it a grid is chosen from start and feeds, and continued upward where particles come near
         its top.
@@ -90,7 +90,7 @@ def steady_state(
     guess = np.array([project_or_none(scheme, one, grid) for one in starts])
     feeds = {id(feed): scheme.project(feed, grid) for feed in vessel.feeds}
     everything = sum(feeds.values(), start=guess.sum(axis=0))
-    if not closed:
+    if not closed and start is None:
         guess = np.tile(everything, (len(starts), 1))
     volume = float(np.array(vessel.volumes) @ (guess @ grid.volume)) if closed else None
     search = Search(vessel, scheme, Ladder(scheme, grid, automatic), feeds, everything, volume)

@@ -115,11 +115,14 @@ def _by_speed(state: Sizes, velocity: Velocity) -> tuple[FloatArray, FloatArray,
     even = np.exp(np.arange(np.log(v[0]), np.log(v[-1]), _CELL))
     edges = np.concatenate([even, v * (1.0 - _AROUND_PIVOT), v * (1.0 + _AROUND_PIVOT)])
     edges = np.unique(np.clip(edges, v[0], v[-1]))
-    rows = number.reshape(-1, v.size)
+    every = number.reshape(-1, v.size)
+    holds = every.any(axis=-1)
+    rows = every[holds] if holds.any() else every  # which is refused below
     pieces = np.array_split(edges, -(-edges.size * rows.size // _ENTRIES))
     below = np.concatenate([means.cumulative(v, rows, piece) for piece in pieces], axis=-1)
     # a spline may fall by a trifle where next to nothing is
-    share = np.diff(np.maximum.accumulate(below, axis=-1), axis=-1, prepend=0.0)
+    share = np.full((every.shape[0], edges.size), np.nan)  # where there is nothing, nothing has a share
+    share[holds] = np.diff(np.maximum.accumulate(below, axis=-1), axis=-1, prepend=0.0)
     speed = _speeds(velocity, edges)
     slow, fast = np.minimum(speed[:-1], speed[1:]), np.maximum(speed[:-1], speed[1:])
     return share, np.append(speed[:1], slow)[:, None], np.append(speed[:1], fast)[:, None]

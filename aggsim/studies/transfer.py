@@ -52,7 +52,8 @@ class Transfer:
     def recovery_factor(self) -> float:
         """Share of the size lost in the spell that came back until the end of the run [1]; NaN if none was lost.
 
-        (regrown - after) / (before - after); sources as in `strength_factor`.
+        (regrown - after) / (before - after); sources as in `strength_factor`. Above 1 where what follows is calmer
+        than what came before, and without meaning where little was lost.
         """
         lost = self.before - self.after
         return (self.regrown - self.after) / lost if lost > 0.0 else float("nan")
@@ -61,9 +62,9 @@ class Transfer:
         name = f"d{100.0 * self.share:g}"
         um = [1e6 * size for size in (self.before, self.after, self.regrown)]
         return (
-            f"{name} by volume: {um[0]:.4g} um before, {um[1]:.4g} um after, {um[2]:.4g} um regrown; strength factor "
-            f"{self.strength_factor:.0%}, recovery factor {self.recovery_factor:.0%}. A model supports and does not "
-            "replace jar tests and trials on the plant."
+            f"{name} by volume: {um[0]:.4g} um before, {um[1]:.4g} um after, {um[2]:.4g} um regrown\n"
+            f"strength factor {self.strength_factor:.0%}, recovery factor {self.recovery_factor:.0%}\n"
+            "A model supports and does not replace jar tests and trials on the plant."
         )
 
 

@@ -228,3 +228,13 @@ def test_an_empty_suspension_is_refused() -> None:
     state = lognormal(3.0)
     with pytest.raises(DistributionError):
         settled_share(State(state.grid, 0.0 * state.number), speed, 1e-3)
+
+
+def test_a_state_without_particles_has_no_share() -> None:
+    grid = ag.SizeGrid.geometric(smallest=1e-18, largest=1e-12)
+    number = np.zeros((2, len(grid)))
+    number[1, 10] = 1e12
+    state = ag.result.Snapshot(grid, number)
+    share = ag.settled_share(state, lambda v: 1e3 * np.cbrt(v) ** 2, [1e-6, 1e-5])
+    assert np.isnan(share[0]).all()
+    assert np.isfinite(share[1]).all()
