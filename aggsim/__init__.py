@@ -10,6 +10,9 @@ from aggsim import kernels as kernels
 from aggsim.breakage import Breakage as Breakage
 from aggsim.breakage import fragments as fragments
 from aggsim.breakage import rates as rates
+from aggsim.ensembles import EnsembleResult as EnsembleResult
+from aggsim.ensembles import Estimate as Estimate
+from aggsim.ensembles import monte_carlo as monte_carlo
 from aggsim.inputs import Compact as Compact
 from aggsim.inputs import Flow as Flow
 from aggsim.inputs import Fractal as Fractal

@@ -27,7 +27,7 @@ ROOMS = {
     "result": {"sizes"},
     "solvers": {"sizes", "schemes", "vessels", "result"},
     "outputs": {"sizes", "result"},
-    "ensembles": {"sizes", "result"},
+    "ensembles": {"sizes"},
     "studies": {"inputs", "interaction", "kernels", "sizes", "vessels", "result", "solvers"},
 }
 # room -> libraries from outside

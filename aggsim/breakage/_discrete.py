@@ -26,6 +26,10 @@ class EqualPieces:
         """Parent, volume [m3] and number of the fragments of the pivots `volume[parents]`."""
         return parents, volume[parents] / self.number, np.full(parents.size, float(self.number))
 
+    def sample(self, parent: FloatArray, generator: np.random.Generator) -> FloatArray:
+        """Volumes (m, number) [m3] of the fragments of one breakage of each `parent` (m,) [m3]."""
+        return np.repeat((parent / self.number)[:, None], self.number, axis=1)
+
 
 @dataclass(frozen=True)
 class Erosion:
@@ -41,7 +45,13 @@ class Erosion:
         self, volume: FloatArray, parents: NDArray[np.int64]
     ) -> tuple[NDArray[np.int64], FloatArray, FloatArray]:
         """Parent, volume [m3] and number of the fragments of the pivots `volume[parents]`."""
-        size = volume[parents]
-        small = np.minimum(self.piece_volume, 0.5 * size)
-        pair = np.stack([small, size - small], axis=1)
+        pair = self._pair(volume[parents])
         return np.repeat(parents, 2), pair.ravel(), np.ones(pair.size)
+
+    def sample(self, parent: FloatArray, generator: np.random.Generator) -> FloatArray:
+        """Volumes (m, 2) [m3] of the fragments of one breakage of each `parent` (m,) [m3]."""
+        return self._pair(parent)
+
+    def _pair(self, parent: FloatArray) -> FloatArray:
+        small = np.minimum(self.piece_volume, 0.5 * parent)
+        return np.stack([small, parent - small], axis=1)

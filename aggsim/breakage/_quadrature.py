@@ -12,6 +12,7 @@ from functools import lru_cache
 from typing import NamedTuple
 
 import numpy as np
+from numpy.polynomial import legendre
 from numpy.typing import NDArray
 from scipy import special
 
@@ -38,9 +39,9 @@ class Panels(NamedTuple):
     low: FloatArray
     high: FloatArray
 
-    def only(self, mask: Mask) -> Panels:
-        """The panels where `mask` (m,) is true."""
-        return Panels(self.parent[mask], self.upper[mask], self.low[mask], self.high[mask])
+    def only(self, chosen: Mask | NDArray[np.int64]) -> Panels:
+        """The panels where a mask (m,) is true, or those of some indices."""
+        return Panels(self.parent[chosen], self.upper[chosen], self.low[chosen], self.high[chosen])
 
 
 class Points(NamedTuple):
@@ -51,12 +52,12 @@ class Points(NamedTuple):
     weight: FloatArray
 
 
-def cells(volume: FloatArray, parents: NDArray[np.int64]) -> Panels:
-    """Panels of the parents (k,) on the pivots `volume` (n,) [m3]; also cut at shares of 1/4, 1/2 and 3/4."""
-    size = volume[parents][:, None]
+def cells(parent: FloatArray, volume: FloatArray) -> Panels:
+    """Panels of the parents (k,) [m3], cut at the pivots `volume` (n,) [m3] and at shares of 1/4, 1/2 and 3/4."""
+    size = parent[:, None]
     halves = []
     for upper, shares in ((False, volume / size), (True, (size - volume) / size)):
-        cuts = np.broadcast_to([0.0, 0.25, 0.5], (parents.size, 3))
+        cuts = np.broadcast_to([0.0, 0.25, 0.5], (parent.size, 3))
         edges = np.sort(np.concatenate([np.clip(shares, 0.0, 0.5), cuts], axis=1), axis=1)
         low, high = edges[:, :-1], edges[:, 1:]
         row, column = np.nonzero(high - low > _SLIVER * high)
@@ -87,6 +88,11 @@ def halved(panels: Panels) -> Panels:
     return Panels(*(np.concatenate(columns) for columns in zip(first, second, strict=True)))
 
 
+def finer(panels: Panels) -> Panels:
+    """Both halves of all panels, in the order of their parents."""
+    return _joined([halved(panels)])
+
+
 def points(panels: Panels, exponents: tuple[float, float] = (0.0, 0.0)) -> Points:
     """Nodes and weights for a density that goes as z**exponents[0] near 0 and (1 - z)**exponents[1] near 1.
 
@@ -110,12 +116,18 @@ def points(panels: Panels, exponents: tuple[float, float] = (0.0, 0.0)) -> Point
     return Points(np.where(upper, far, near), np.where(upper, near, far), weight)
 
 
+def nearer(panels: Panels, position: FloatArray) -> FloatArray:
+    """Shares, counted as `low` and `high`, at positions (m, k) or (k,) from 0 to 1 in the variable of the panels."""
+    low, high = _to_variable(panels, panels.low), _to_variable(panels, panels.high)
+    at = low[:, None] + (high - low)[:, None] * position
+    out: FloatArray = np.where(panels.upper[:, None], at, at * at)
+    return out
+
+
 def ends(panels: Panels) -> tuple[FloatArray, FloatArray]:
     """Shares z and 1 - z (m, 2) just inside the two ends of each panel."""
-    low, high = _to_variable(panels, panels.low), _to_variable(panels, panels.high)
-    at = low[:, None] + (high - low)[:, None] * np.array(_INSIDE)
+    near = nearer(panels, np.array(_INSIDE))
     upper = panels.upper[:, None]
-    near = np.where(upper, at, at * at)
     return np.where(upper, 1.0 - near, near), np.where(upper, near, 1.0 - near)
 
 
@@ -129,6 +141,13 @@ def to_ends() -> FloatArray:
             if k != j:
                 basis[j] *= (np.array(_INSIDE) - node[k]) / (node[j] - node[k])
     return basis
+
+
+@lru_cache(maxsize=1)
+def to_legendre() -> FloatArray:
+    """Matrix (nodes, nodes) from weighted values at the nodes of a plain rule to their Legendre series on (-1, 1)."""
+    node, _ = _rule(0.0)
+    return legendre.legvander(2.0 * node - 1.0, _NODES - 1) * (np.arange(_NODES) + 0.5)
 
 
 def _to_variable(panels: Panels, share: FloatArray) -> FloatArray:

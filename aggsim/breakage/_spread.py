@@ -13,7 +13,7 @@ from numpy.typing import ArrayLike, NDArray
 from scipy import special
 
 from aggsim._checks import FloatArray, refuse
-from aggsim.breakage import _quadrature
+from aggsim.breakage import _quadrature, _sampling
 from aggsim.breakage._quadrature import Mask, Panels
 from aggsim.errors import AggsimError, BreakageError
 
@@ -24,6 +24,9 @@ _HUMP = 3.0  # standard deviations that one rule resolves
 _PRECISION = 1e-13
 _JUMP = 1e-10
 _SMALLEST_SHARE = 1e-60  # an unknown density is not resolved any closer to the ends
+_PAIRED = 1e-7  # share of all fragments that may lack their counterpart
+_KNOWN = 1e-9  # least share whose complement tells it apart
+_WHOLE = 1e-9  # relative; an exponent such as -2/3 makes a whole number of pieces up to round-off
 
 
 class SpreadLaw(ABC):
@@ -61,6 +64,28 @@ class SpreadLaw(ABC):
         return parent[there], (at.share * size).ravel()[there], count[there]
 
     @abstractmethod
+    def sample(self, parent: FloatArray, generator: np.random.Generator) -> FloatArray:
+        """Fragments of one breakage of each parent, drawn at random.
+
+        Parameters
+        ----------
+        parent : ndarray, shape (m,)
+            Volumes [m3].
+        generator : numpy.random.Generator
+            The only source of chance.
+
+        Returns
+        -------
+        ndarray, shape (m, k)
+            Volumes [m3]; each row adds up to its parent. A piece below the range of floats is 0.
+
+        Raises
+        ------
+        BreakageError
+            If the law does not say what the fragments of a single event are.
+        """
+
+    @abstractmethod
     def _share_density(self, share: FloatArray, rest: FloatArray, parent: FloatArray) -> FloatArray:
         """u b(z u, u) for z = `share` and 1 - z = `rest`, neither of them 0."""
 
@@ -69,7 +94,7 @@ class SpreadLaw(ABC):
         return 0.0, 0.0
 
     def _panels(self, volume: FloatArray, parents: NDArray[np.int64]) -> Panels:
-        return _quadrature.refined(_quadrature.cells(volume, parents), self._too_wide)
+        return _quadrature.refined(_quadrature.cells(volume[parents], volume), self._too_wide)
 
     def _too_wide(self, panels: Panels) -> Mask:
         """Panels on which the density is no polynomial of low degree."""
@@ -103,6 +128,17 @@ class Parabolic(ShareLaw):
     def _share_density(self, share: FloatArray, rest: FloatArray, parent: FloatArray) -> FloatArray:
         return self.shape + (6.0 - 3.0 * self.shape) * (share - rest) ** 2
 
+    def sample(self, parent: FloatArray, generator: np.random.Generator) -> FloatArray:
+        # a mixture of the uniform law and that of C = 0, 3 (2 z - 1)**2, or of C = 3, 6 z (1 - z)
+        uniform = generator.random(parent.size)
+        if self.shape <= 2.0:
+            chance = 1.0 - 0.5 * self.shape
+            other = 0.5 + 0.5 * np.cbrt(generator.uniform(-1.0, 1.0, parent.size))
+        else:
+            chance = self.shape - 2.0
+            other = generator.beta(2.0, 2.0, parent.size)
+        return _sampling.pair(parent, np.where(generator.random(parent.size) < chance, other, uniform))
+
 
 @dataclass(frozen=True)
 class Beta(ShareLaw):
@@ -115,6 +151,9 @@ class Beta(ShareLaw):
         q = self.shape
         factor = 8.0 * math.exp(-(q * math.log(4.0) + special.betaln(q, q)))
         return factor * (4.0 * share * rest) ** (q - 1.0)
+
+    def sample(self, parent: FloatArray, generator: np.random.Generator) -> FloatArray:
+        return _sampling.dirichlet(parent, 2, self.shape, generator)
 
     def _exponents(self) -> tuple[float, float]:
         return self.shape - 1.0, self.shape - 1.0
@@ -140,6 +179,20 @@ class PowerLaw(ShareLaw):
     def _share_density(self, share: FloatArray, rest: FloatArray, parent: FloatArray) -> FloatArray:
         return (self.exponent + 2.0) * share**self.exponent
 
+    def sample(self, parent: FloatArray, generator: np.random.Generator) -> FloatArray:
+        number = self._number()
+        pieces = round(number)
+        if abs(number - pieces) > _WHOLE * number:
+            below, above = (f"{(2 - p) / (p - 1):.12g} ({p} pieces)" for p in (int(number), int(number) + 1))
+            refuse(
+                "exponent of fragments that are drawn at random",
+                f"{self.exponent:g}, {number:g} pieces on average,",
+                "(2 - p)/(p - 1) with a whole number p of pieces",
+                f"{below} or {above}; or simulate, which needs averages",
+                error=BreakageError,
+            )
+        return _sampling.dirichlet(parent, pieces, 1.0 / (pieces - 1), generator)
+
     def _exponents(self) -> tuple[float, float]:
         return self.exponent, 0.0
 
@@ -156,6 +209,13 @@ class LogNormalPair(ShareLaw):
 
     def _share_density(self, share: FloatArray, rest: FloatArray, parent: FloatArray) -> FloatArray:
         return self._one(share) + self._one(rest)
+
+    def sample(self, parent: FloatArray, generator: np.random.Generator) -> FloatArray:
+        sigma = math.log(self.gsd)
+        below_whole = special.ndtr(-math.log(self.median_share) / sigma)
+        depth = special.ndtri(below_whole * generator.random(parent.size))
+        # the law ends at 1, round-off a little later
+        return _sampling.pair(parent, np.minimum(self.median_share * np.exp(sigma * depth), 1.0))
 
     def _one(self, share: FloatArray) -> FloatArray:
         sigma = math.log(self.gsd)
@@ -214,11 +274,59 @@ class FunctionLaw(SpreadLaw):
             )
         return out[()]
 
+    def sample(self, parent: FloatArray, generator: np.random.Generator) -> FloatArray:
+        if parent.size == 0:
+            return np.zeros((0, 2))
+        size, place = np.unique(parent, return_inverse=True)
+        # panels on which an integral is right are halved, so that the polynomials are right as well
+        panels = _quadrature.finer(self._resolved(size, np.zeros(0)))
+        at = _quadrature.points(panels)
+        count = at.weight * self._share_density(at.share, at.rest, size[panels.parent][:, None])
+        self._require_pairs(size, panels, at, count)
+        # the smaller one of the two
+        small = ~panels.upper
+        return _sampling.pair(parent, _sampling.shares(panels.only(small), count[small], place, generator))
+
+    def _require_pairs(
+        self, size: FloatArray, panels: Panels, at: _quadrature.Points, count: FloatArray
+    ) -> None:
+        """Refuse fragments of `size` (k,) [m3] that are not always a piece and the rest."""
+        hint = "a law of `fragments`, one's own with a method `sample`, or simulate, which needs averages"
+        pieces = self.pieces(size)
+        wrong = np.flatnonzero(~(np.abs(pieces - 2.0) <= 2.0 * _PAIRED))
+        if wrong.size:
+            i = wrong[0]
+            refuse(
+                "pieces of fragments that are drawn at random",
+                f"{pieces[i]:g} for a parent of {size[i]:g} m3",
+                "2, since an average does not say how more pieces share their parent",
+                hint,
+                error=BreakageError,
+            )
+        known = np.minimum(at.share, at.rest) > _KNOWN
+        share, rest = np.where(known, at.rest, at.share), np.where(known, at.share, at.rest)
+        mirrored = at.weight * self._share_density(share, rest, size[panels.parent][:, None])
+        lonely = np.bincount(panels.parent, np.abs(count - mirrored).sum(axis=1))
+        number = np.bincount(panels.parent, count.sum(axis=1))
+        wrong = np.flatnonzero((lonely > 2.0 * _PAIRED) | (np.abs(number - 2.0) > 2.0 * _PAIRED))
+        if wrong.size:
+            i = wrong[0]
+            refuse(
+                "density of fragments that are drawn at random",
+                f"a law with {number[i]:g} fragments of {size[i]:g} m3, {lonely[i]:g} without a counterpart,",
+                "two fragments, with equal densities at v and parent - v",
+                hint,
+                error=BreakageError,
+            )
+
     def _share_density(self, share: FloatArray, rest: FloatArray, parent: FloatArray) -> FloatArray:
         return parent * self.density(share * parent, parent)
 
     def _panels(self, volume: FloatArray, parents: NDArray[np.int64]) -> Panels:
-        size = volume[parents]
+        return self._resolved(volume[parents], volume)
+
+    def _resolved(self, size: FloatArray, volume: FloatArray) -> Panels:
+        """Panels of parents of `size` (k,) [m3], cut at the pivots `volume` (n,) [m3], that hold the density."""
         scale = np.stack([self.pieces(size), np.ones(size.shape)], axis=1)
 
         def unresolved(panels: Panels) -> Mask:
@@ -230,7 +338,7 @@ class FunctionLaw(SpreadLaw):
             least = np.where(panels.upper, _PRECISION, _SMALLEST_SHARE)
             return np.logical_and(wide, panels.high > least)
 
-        return _quadrature.refined(_quadrature.cells(volume, parents), unresolved)
+        return _quadrature.refined(_quadrature.cells(size, volume), unresolved)
 
     def _amounts(self, panels: Panels, size: FloatArray) -> tuple[FloatArray, FloatArray]:
         """Number and share of the volume (m, 2) in panels; number (m,) that a jump beside an end would hide."""

@@ -1,8 +1,9 @@
 """What a particle breaks into.
 
-Every law has `pieces(parent)`, the mean number of fragments of a parent volume [m3], and `point_masses`, which
-puts the fragments of many parents on a grid. Laws with a density b(v, u) of fragment volumes v from a parent u also
-have `density(volume, parent)` [1/m3]; z = v/u is the share of the parent. Each conserves volume for each parent.
+Every law has `pieces(parent)`, the mean number of fragments of a parent volume [m3], `point_masses`, which puts the
+fragments of many parents on a grid, and `sample(parent, generator)`, which draws those of single events at random.
+Laws with a density b(v, u) of fragment volumes v from a parent u also have `density(volume, parent)` [1/m3]; z = v/u
+is the share of the parent. Each conserves volume for each parent.
 """
 
 from __future__ import annotations

@@ -66,7 +66,8 @@ class Breakage:
     rate : callable
         rate(volume) -> S [1/s] for an array of volumes [m3]; see `rates`.
     fragments : fragment law
-        b; see `fragments`. One's own law has `pieces(parent)` and `point_masses(volume, parents)`.
+        b; see `fragments`. One's own law has `pieces(parent)` and `point_masses(volume, parents)`, and for
+        `monte_carlo` also `sample(parent, generator)`.
     smallest : float, optional
         Particles of this volume or less do not break [m3]: that of a primary particle. Fragments may be smaller.
     strength : kernels.Strength, optional
@@ -115,47 +116,15 @@ class Breakage:
         if not isinstance(self.name, str) or not self.name:
             _refuse("name", repr(self.name), "a text that is not empty")
 
-    def table(self, volume: ArrayLike) -> FragmentTable:
-        """Rates and fragments of the pivots `volume` (n,) [m3], which increase.
-
-        The point masses of each parent make up its volume and its number of pieces. Fragments with a density are
-        Gauss quadratures inside the cells between pivots: integrals over a cell of the density times a polynomial
-        of degree 5 in v or in v**(1/2) are exact to round-off. Pivots with the rate 0 have no fragments.
+    def rates(self, volume: ArrayLike) -> FloatArray:
+        """Breakage rates (n,) [1/s] of particles of `volume` (n,) [m3]; 0 up to `smallest`.
 
         Raises
         ------
         BreakageError
-            If a rate is negative or not finite, or fragments do not make up their parent.
+            If a rate is negative or not finite, or a volume is not positive.
         """
-        x = _checks.array("volume", volume, "m3", above=0.0, increasing=True, error=BreakageError)
-        rate = self._rates(x)
-        parents = np.flatnonzero(rate)
-        if parents.size == 0:
-            return FragmentTable(rate, parents, np.zeros(0), np.zeros(0))
-        pieces = self._pieces(x[parents])
-        parent, fragment, count = self.fragments.point_masses(x, parents)
-        self._require_fragments(x, parents, parent, fragment, count)
-        place = np.searchsorted(parents, parent)
-        share = fragment / x[parent]
-        sums: list[FloatArray] = [
-            np.bincount(place, count * share**k, minlength=parents.size).astype(np.float64) for k in range(3)
-        ]
-        self._require_conserved(x[parents], pieces, sums)
-        return FragmentTable(rate, parent, fragment, count * _correction(pieces, sums, place, share))
-
-    def __mul__(self, other: Any) -> Breakage:
-        if _is_strength(other):
-            return replace(self, strength=other if self.strength is None else self.strength * other)
-        hint = "a factor such as 0.5, or a Strength"
-        factor = _checks.scalar("factor", other, least=0.0, hint=hint, error=BreakageError)
-        if isinstance(self.rate, _Scaled):
-            return replace(self, rate=_Scaled(self.rate.rate, self.rate.factor * factor))
-        return replace(self, rate=_Scaled(self.rate, factor))
-
-    __rmul__ = __mul__
-
-    def _rates(self, x: FloatArray) -> FloatArray:
-        """Rates of all pivots, 0 for those that do not break, checked."""
+        x = _checks.array("volume", volume, "m3", above=0.0, error=BreakageError)
         out = np.zeros(x.shape)
         breaks = np.ones(x.shape, dtype=bool)
         if self.smallest is not None:
@@ -185,6 +154,45 @@ class Breakage:
             )
         out[breaks] = rate
         return out
+
+    def table(self, volume: ArrayLike) -> FragmentTable:
+        """Rates and fragments of the pivots `volume` (n,) [m3], which increase.
+
+        The point masses of each parent make up its volume and its number of pieces. Fragments with a density are
+        Gauss quadratures inside the cells between pivots: integrals over a cell of the density times a polynomial
+        of degree 5 in v or in v**(1/2) are exact to round-off. Pivots with the rate 0 have no fragments.
+
+        Raises
+        ------
+        BreakageError
+            If a rate is negative or not finite, or fragments do not make up their parent.
+        """
+        x = _checks.array("volume", volume, "m3", above=0.0, increasing=True, error=BreakageError)
+        rate = self.rates(x)
+        parents = np.flatnonzero(rate)
+        if parents.size == 0:
+            return FragmentTable(rate, parents, np.zeros(0), np.zeros(0))
+        pieces = self._pieces(x[parents])
+        parent, fragment, count = self.fragments.point_masses(x, parents)
+        self._require_fragments(x, parents, parent, fragment, count)
+        place = np.searchsorted(parents, parent)
+        share = fragment / x[parent]
+        sums: list[FloatArray] = [
+            np.bincount(place, count * share**k, minlength=parents.size).astype(np.float64) for k in range(3)
+        ]
+        self._require_conserved(x[parents], pieces, sums)
+        return FragmentTable(rate, parent, fragment, count * _correction(pieces, sums, place, share))
+
+    def __mul__(self, other: Any) -> Breakage:
+        if _is_strength(other):
+            return replace(self, strength=other if self.strength is None else self.strength * other)
+        hint = "a factor such as 0.5, or a Strength"
+        factor = _checks.scalar("factor", other, least=0.0, hint=hint, error=BreakageError)
+        if isinstance(self.rate, _Scaled):
+            return replace(self, rate=_Scaled(self.rate.rate, self.rate.factor * factor))
+        return replace(self, rate=_Scaled(self.rate, factor))
+
+    __rmul__ = __mul__
 
     def _pieces(self, size: FloatArray) -> FloatArray:
         pieces = np.broadcast_to(np.asarray(self.fragments.pieces(size), dtype=np.float64), size.shape)

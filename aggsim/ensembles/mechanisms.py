@@ -8,13 +8,11 @@ from typing import Any
 
 import numpy as np
 
-from aggsim import _checks
 from aggsim._checks import FloatArray
 from aggsim.errors import InputError
 
 _INSTANTS = 17  # at which a strength is sampled on an interval
 _MARGIN = 1.1  # for what lies between them
-_SAME_SIZE = 1e-9  # relative; a particle of the smallest size may miss it by round-off
 _PIECES = 16  # of a stretch of time in which a strength may vary
 
 
@@ -67,32 +65,9 @@ def collision_mechanisms(kernel: Any) -> list[Mechanism]:
     return out
 
 
-@dataclass(frozen=True)
-class BreakageRate:
-    """Checked rate [1/s] of a breakage law; particles up to `smallest` [m3] do not break."""
-
-    rate: Any
-    smallest: float
-
-    def __call__(self, volume: FloatArray) -> FloatArray:
-        out = np.zeros(volume.shape)
-        breaks = volume > self.smallest * (1.0 + _SAME_SIZE)
-        # what goes wrong in a formula shows in its values
-        with np.errstate(all="ignore"):
-            out[breaks] = self.rate(volume[breaks])
-        bad = ~((out >= 0.0) & (out < np.inf))
-        if bad.any():
-            _checks.refuse(
-                f"breakage rate of volume {volume[bad][0]:g} m3",
-                f"{out[bad][0]:g} 1/s",
-                "finite, at least 0 [1/s]",
-            )
-        return out
-
-
 def breakage_mechanisms(laws: Sequence[Any]) -> list[Mechanism]:
     """The rates of breakage laws."""
-    return [Mechanism(BreakageRate(law.rate, law.smallest or 0.0), law.strength) for law in laws]
+    return [Mechanism(law.rates, law.strength) for law in laws]
 
 
 @dataclass(frozen=True)

@@ -278,10 +278,16 @@ class Measured(StartingDistribution):
 
     def limits(self, share: float = 1e-9) -> tuple[float, float]:
         share = distribution.share(share)
-        return (
-            self._reach(self.number_below, share * self.total_number),
-            self._reach(self.volume_below, (1.0 - share) * self.total_volume),
-        )
+        if share not in self._limits_found:  # a search each, and every run asks for the same few
+            self._limits_found[share] = (
+                self._reach(self.number_below, share * self.total_number),
+                self._reach(self.volume_below, (1.0 - share) * self.total_volume),
+            )
+        return self._limits_found[share]
+
+    @cached_property
+    def _limits_found(self) -> dict[float, tuple[float, float]]:
+        return {}
 
     def _reach(self, below: Callable[[float], FloatArray], wanted: float) -> float:
         """Volume [m3] at which a cumulative reaches what is wanted; an edge where round-off decides."""

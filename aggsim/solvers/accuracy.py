@@ -15,10 +15,9 @@ from functools import partial
 import numpy as np
 
 from aggsim.errors import SimulationError
-from aggsim.result import Comparison, ErrorEstimate, Later, Result, Snapshot
+from aggsim.result import Comparison, ErrorEstimate, Later, Outcome, Result, Snapshot
 from aggsim.sizes import SizeGrid
 from aggsim.solvers.job import Job
-from aggsim.solvers.ladder import LARGEST_AUTOMATIC_GRID
 
 COARSE = 2.0  # ratio of spacings between a result and the one coarse run of a quick estimate
 LOOSE = 30.0  # ratio of their tolerances
@@ -31,7 +30,7 @@ TRUSTED_ORDER = 5.0  # of a scheme of higher order
 FIRST_TOLERANCE = 1e-2  # rtol over the accuracy that is asked for
 MOST_RUNS = 24
 UNSEEN = 1e-9  # share of M3 past the top that is not looked at further
-FINEST = 12.0  # times the usual sections per doubling
+COARSEST, FINEST = 0.5, 12.0  # times the usual sections per doubling
 FLOOR = 3e-3  # of rtol: what no estimate goes below
 FIRST_ERROR = 1e-3  # what the first grid is good for, with so many times the usual sections per doubling:
 FIRST, FIRST_AT_SINGLE_SIZES = 0.7, 1.0
@@ -77,7 +76,8 @@ def refined(job: Job, accuracy: float, progress: object) -> Result:
     finer = first * max(1.0, (FIRST_ERROR / accuracy) ** (1.0 / min(full, 6.0))) if sized else 1.0
     rtol = max(FIRST_TOLERANCE * accuracy, 1e-12)
     best: tuple[float, Result] | None = None
-    runs, known = 0, {}
+    runs, finest = 0, FINEST
+    known: dict[tuple[float, float], Result] = {}
 
     def run(density: float, tolerance: float) -> Result:
         nonlocal runs
@@ -90,34 +90,34 @@ def refined(job: Job, accuracy: float, progress: object) -> Result:
     while runs < MOST_RUNS:
         wide = finer / STEP if sized else finer
         fine, loose = run(finer, rtol), run(wide, min(TIGHTER * rtol, 1e-2))
-        if not (fine.status.completed and loose.status.completed):
-            if not fine.status.completed and best is not None:
-                break
-            if fine.status.gelation_time is not None or finer > 2.0:
-                return fine
+        outcomes = {fine.status.outcome, loose.status.outcome} - {Outcome.COMPLETED}
+        if outcomes == {Outcome.UNRESOLVED} and finer < 2.0:
             finer *= STEP  # too coarse to be run at all
             continue
-        error = _compared(fine, loose, partial(run, wide, rtol), order, accuracy, FLOOR * rtol, runs)
-        largest = error.largest
-        if best is None or largest < best[0]:
-            best = largest, replace(fine, estimate=Later(error))
-        if largest <= accuracy or fine.grid.sections >= LARGEST_AUTOMATIC_GRID or rtol <= 1e-12:
-            break
-        if runs <= 2 and sized:
-            finer *= STEP  # nearly always the grid; to find out would take another run
+        if fine.status.outcome is Outcome.OUTGROWN and best is None and finer > COARSEST:
+            finest = finer = finer / STEP  # so fine that the longest grid is too short
             continue
-        causes = error.by_cause()
-        if causes["time"] > 0.3 * accuracy:
-            rtol = max(rtol / TIGHTER, 1e-12)
-        if sized and causes["size"] > 0.5 * accuracy:
-            wanted = (2.0 * causes["size"] / accuracy) ** (1.0 / order)
-            finer *= STEP ** max(1, min(2, math.ceil(math.log(wanted) / math.log(STEP))))
-            if finer > FINEST or job.grid(finer).sections > LARGEST_AUTOMATIC_GRID:
-                break
-        elif causes["time"] <= 0.3 * accuracy:
-            break  # what passed the top remains
-    assert best is not None, "a run that was completed stands here"
-    return best[1]
+        if outcomes:
+            break
+        error = _compared(fine, loose, partial(run, wide, rtol), order, accuracy, FLOOR * rtol, runs)
+        if best is None or error.largest < best[0]:
+            best = error.largest, replace(fine, estimate=Later(error))
+        if error.largest <= accuracy or rtol <= 1e-12:
+            break
+        before = finer, rtol
+        if runs <= 2 and sized:
+            finer = min(finer * STEP, finest)  # nearly always the grid; to find out would take another run
+        else:
+            causes = error.by_cause()
+            if causes["time"] > 0.3 * accuracy:
+                rtol = max(rtol / TIGHTER, 1e-12)
+            if sized and causes["size"] > 0.5 * accuracy:
+                wanted = (2.0 * causes["size"] / accuracy) ** (1.0 / order)
+                steps = max(1, min(2, math.ceil(math.log(wanted) / math.log(STEP))))
+                finer = min(finer * STEP**steps, finest)
+        if (finer, rtol) == before:
+            break  # as fine as it may be, or what passed the top is all that remains
+    return fine if best is None else best[1]
 
 
 def _compared(

@@ -188,8 +188,8 @@ def _warn(result: Result, automatic: bool) -> None:
     if result.estimate is not None and result.estimate.ready and not result.error.met:
         warnings.warn(
             f"the accuracy asked for, {result.error.asked:g}, was not reached within the cost allowed; the estimated "
-            f"error is {result.error.largest:.2g}, in {result.error.worst}. Try: output times farther from gelation, or "
-            "a larger accuracy; under settling M3, the ninth power of diameter, hangs on very few particles.",
+            f"error is {result.error.largest:.2g}, in {result.error.worst}. Try: output times farther from gelation, "
+            "or a larger accuracy; under settling M3, the ninth power of diameter, hangs on very few particles.",
             AccuracyWarning,
             stacklevel=3,
         )

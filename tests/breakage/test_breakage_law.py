@@ -44,6 +44,17 @@ def test_the_smallest_and_what_is_smaller_do_not_break() -> None:
     assert breaking(smallest=0.0).table(GRID).parent.size == 12
 
 
+def test_rates_of_particles_in_any_order() -> None:
+    law = breaking(smallest=GRID[4])
+    np.testing.assert_array_equal(law.rates(GRID), law.table(GRID).rate)
+    np.testing.assert_array_equal(law.rates(GRID[::-1]), law.rates(GRID)[::-1])
+    np.testing.assert_array_equal(
+        law.rates([GRID[4] * (1.0 + 1e-12), GRID[4] * (1.0 + 1e-8)]) > 0.0, [False, True]
+    )
+    with pytest.raises(BreakageError, match=r"volume\[1\]=0 m3"):
+        law.rates([1e-18, 0.0])
+
+
 def test_rates_are_not_asked_for_what_does_not_break() -> None:
     law = breaking(rate=lambda v: np.log(v / GRID[2]), smallest=GRID[2])
     assert law.table(GRID).rate[3] == pytest.approx(math.log(1.3), rel=1e-12)

@@ -5,6 +5,7 @@ from __future__ import annotations
 import inspect
 import math
 import pickle
+from itertools import pairwise
 from typing import Any
 
 import numpy as np
@@ -34,6 +35,13 @@ LAWS: dict[str, list[Any]] = {
     "from_function": [fragments.from_function(hump, pieces=2)],
 }
 CASES = [law for laws in LAWS.values() for law in laws]
+JUMPS = fragments.from_function(
+    lambda v, u: np.where((v > 0.1 * u) & (v < 0.9 * u), 2.5 / u, 0.0), pieces=2.0
+)
+# uniform of small parents, a hump of large ones
+BY_SIZE = fragments.from_function(
+    lambda v, u: np.where(u > 1e-20, hump(v, u), 2.0 / u), lambda u: 2.0 + 0.0 * u
+)
 ALWAYS = rates.power_law(coefficient=1.0, exponent=0.0)
 
 
@@ -84,6 +92,38 @@ def test_parents_stand_alone(law: Any) -> None:
         _, alone, number = law.point_masses(grid, np.array([index]))
         np.testing.assert_array_equal(volume[parent == index], alone)
         np.testing.assert_array_equal(count[parent == index], number)
+
+
+@pytest.mark.parametrize("law", [*CASES, JUMPS, BY_SIZE], ids=repr)
+def test_random_fragments_follow_the_table(law: Any) -> None:
+    grid = 1e-21 * 1.37 ** np.arange(14.0)
+    table = Breakage(rate=ALWAYS, fragments=law).table(grid)
+    events = 10_000
+    parents = np.array([4, 13])
+    volume = law.sample(np.tile(grid[parents], events), np.random.default_rng(8))
+    np.testing.assert_allclose(volume.sum(axis=1), np.tile(grid[parents], events), rtol=1e-14)
+    assert (volume >= 0.0).all()
+    for place, parent in enumerate(parents):
+        mine = table.parent == parent
+        mean = np.bincount(np.searchsorted(grid, table.volume[mine]), table.count[mine], minlength=grid.size)
+        pieces = volume[place::2]
+        drawn = np.array([((pieces > low) & (pieces <= high)).sum(axis=1) for low, high in cells(grid)]).T
+        # with fewer than 25 expected in all, the scatter of the sample says nothing; 20 are 4 times its root
+        limit = np.where(events * mean > 25.0, 4.0 * drawn.std(axis=0) / math.sqrt(events), 20.0 / events)
+        assert (np.abs(drawn.mean(axis=0) - mean) <= limit + 1e-12).all()
+
+
+def cells(grid: np.ndarray) -> Any:
+    """Lower and upper ends; a piece below the range of floats is 0."""
+    return pairwise([-1.0, *grid])
+
+
+@pytest.mark.parametrize("law", CASES, ids=repr)
+def test_chance_comes_from_the_generator_alone(law: Any) -> None:
+    parent = 1e-21 * 1.37 ** np.arange(14.0)
+    first, again = (law.sample(parent, np.random.default_rng(3)) for _ in range(2))
+    np.testing.assert_array_equal(first, again)
+    assert law.sample(np.zeros(0), np.random.default_rng(3)).shape == (0, first.shape[1])
 
 
 @pytest.mark.parametrize("law", CASES, ids=repr)

@@ -1,6 +1,6 @@
 from __future__ import annotations
 
-from types import SimpleNamespace
+from typing import Any
 
 import numpy as np
 import pytest
@@ -19,11 +19,18 @@ CONSTANT = ag.kernels.constant(1.0)
 STEP = ag.kernels.Strength.steps([2.0], [1.0, 3.0])
 
 
-def law(**changes: object) -> SimpleNamespace:
-    fragments = SimpleNamespace(sample=lambda parent, generator: parent[:, None])
-    return SimpleNamespace(
-        **({"rate": lambda v: v, "fragments": fragments, "smallest": None, "strength": None} | changes)
-    )
+def law(rate: Any = lambda v: v, **options: Any) -> ag.Breakage:
+    return ag.Breakage(rate=rate, fragments=ag.fragments.uniform_binary(), **options)
+
+
+class Averages:
+    """Fragments that are known by their averages alone."""
+
+    def pieces(self, parent: Any) -> Any:
+        return 2.0
+
+    def point_masses(self, volume: Any, parents: Any) -> Any:
+        raise NotImplementedError
 
 
 def test_parts_without_strength_are_one_mechanism() -> None:
@@ -64,7 +71,7 @@ def test_small_particles_do_not_break() -> None:
 @pytest.mark.parametrize("rate", [-1.0, np.inf, np.nan])
 def test_rates_of_breakage_are_checked(rate: float) -> None:
     (mechanism,) = breakage_mechanisms([law(rate=lambda v: np.full(v.shape, rate))])
-    with pytest.raises(InputError, match="breakage rate"):
+    with pytest.raises(InputError, match="'breakage': rate"):
         mechanism.rate(np.array([1.0]))
 
 
@@ -81,9 +88,7 @@ def test_only_a_closed_batch_is_simulated() -> None:
 
 
 def test_fragments_must_be_drawable() -> None:
-    one, two = law(), law(fragments=object())
-    vessel = SimpleNamespace(kernel=CONSTANT, breakage=one, processes=(1, 2))
-    assert laws_of(vessel) == (CONSTANT, (one,))
-    vessel = SimpleNamespace(kernel=None, breakage=(one, two), processes=(1, 2))
+    one, two = law(), ag.Breakage(rate=lambda v: v, fragments=Averages())
+    assert laws_of(ag.Batch(CONSTANT, breakage=one)) == (CONSTANT, (one,))
     with pytest.raises(InputError, match="sample"):
-        laws_of(vessel)
+        laws_of(ag.Batch(None, breakage=(one, two)))

@@ -3,11 +3,11 @@
 from __future__ import annotations
 
 from collections import Counter
-from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
 import pytest
+from closed_breakage import Reversible, uniform
 from scipy.linalg import expm
 
 import aggsim as ag
@@ -20,11 +20,8 @@ MONO = ag.Monodisperse(volume=1.0, number=1.0)
 EXP = ag.Exponential(mean_volume=1.0, number=1.0)
 
 
-@dataclass(frozen=True)
-class Fragments:
-    """Fragments that can be drawn; the deterministic side is not needed here."""
-
-    whole: bool = False  # two pieces of whole volumes, else any
+class WholePieces:
+    """Two pieces of whole volumes; averages are not needed here."""
 
     def pieces(self, parent: Array) -> Array:
         return np.full(np.shape(parent), 2.0)
@@ -33,35 +30,18 @@ class Fragments:
         raise NotImplementedError
 
     def sample(self, parent: Array, generator: np.random.Generator) -> Array:
-        part = generator.random(parent.size) * parent
-        if self.whole:
-            part = generator.integers(1, np.rint(parent).astype(int)).astype(float)
+        part = generator.integers(1, np.rint(parent).astype(int)).astype(float)
         return np.stack([part, parent - part], axis=1)
 
 
-def in_proportion(coefficient: float) -> ag.Breakage:
-    """Uniform binary breakage at a rate in proportion to the volume."""
-    return ag.Breakage(rate=lambda v: coefficient * v, fragments=Fragments())
-
-
-def steady_number(t: Array) -> Array:
-    # dN/dt = -K N^2/2 + s phi for S = s v, two pieces; here K = 2, s phi = 1/4, N(0) = 1
-    return 0.5 / np.tanh(0.5 * (t + 2.0 * np.arctanh(0.5)))
-
-
+BOTH = Reversible(0.125)  # half as many particles in the end
 CLOSED = [
-    # sources of the closed solutions: see tests/closed_solutions.py
+    # sources of the closed solutions: see closed_solutions and closed_breakage
     ("constant", ag.Batch(ag.kernels.constant(1.0)), MONO, [1.0, 5.0], lambda t: 1 / (1 + t / 2)),
     ("constant, exponential", ag.Batch(ag.kernels.constant(1.0)), EXP, [1.0, 5.0], lambda t: 1 / (1 + t / 2)),
     ("sum", ag.Batch(ag.kernels.additive(1.0)), MONO, [0.5, 1.5], lambda t: np.exp(-t)),
     ("sum, exponential", ag.Batch(ag.kernels.additive(1.0)), EXP, [0.5, 1.5], lambda t: np.exp(-t)),
-    (
-        "constant with breakage",
-        ag.Batch(ag.kernels.constant(2.0), breakage=in_proportion(0.25)),
-        EXP,
-        [0.5, 4.0],
-        steady_number,
-    ),
+    ("constant with breakage", BOTH.vessel, EXP, [1.0, 8.0], BOTH.number),
 ]
 
 
@@ -120,7 +100,7 @@ def test_a_closed_volume_follows_the_master_equation(breaks: bool) -> None:
     chance = expm(time * generator)[:, place[(1,) * 10]]
 
     kernel = ag.kernels.from_function(lambda v, w: (v - w) ** 2 + 1.0)
-    law = ag.Breakage(rate=lambda v: 0.2 * (v - 1.0), fragments=Fragments(whole=True), smallest=1.0)
+    law = ag.Breakage(rate=lambda v: 0.2 * (v - 1.0), fragments=WholePieces(), smallest=1.0)
     vessel = ag.Batch(kernel, breakage=law if breaks else None)
     result = monte_carlo(vessel, MONO, time, particles=10, replicates=replicates, seed=5, refill=False)
     found = Counter(tuple(np.rint(v[::-1]).astype(int).tolist()) for v in result.particles[0])
@@ -158,7 +138,7 @@ def test_sections_and_samples_agree_on_brownian_aggregation() -> None:
 
 
 def test_the_same_seed_gives_the_same_particles() -> None:
-    vessel = ag.Batch(ag.kernels.additive(1.0), breakage=in_proportion(0.1))
+    vessel = ag.Batch(ag.kernels.additive(1.0), breakage=uniform(0.1, 1.0))
     runs = [monte_carlo(vessel, EXP, [1.0, 2.0], particles=100, replicates=3, seed=s) for s in (1, 1, 2)]
     for first, second in zip(runs[0].particles[-1], runs[1].particles[-1], strict=True):
         np.testing.assert_array_equal(first, second)
@@ -174,7 +154,7 @@ def test_a_kernel_of_plain_python_gives_the_same_particles_as_one_of_the_library
 
 @pytest.mark.parametrize("refill", [True, False])
 def test_the_volume_is_kept_to_round_off(refill: bool) -> None:
-    vessel = ag.Batch(ag.kernels.constant(2.0), breakage=in_proportion(3.0))
+    vessel = ag.Batch(ag.kernels.constant(2.0), breakage=uniform(3.0, 1.0))
     times = [0.0, 1.0, 10.0]
     result = monte_carlo(vessel, EXP, times, particles=300, replicates=4, seed=2, refill=refill)
     volume = result.moment(1).values
@@ -210,7 +190,7 @@ def test_strengths_act_by_their_integral() -> None:
 def test_breakage_alone_and_with_a_strength() -> None:
     # R. M. Ziff, E. D. McGrady, J. Phys. A 18 (1985) 3027: for S = v and uniform binary breakage of an
     # exponential start, n = (1 + t)**2 exp(-(1 + t) v), so that M0 = 1 + t and M2 = 2/(1 + t)
-    law = in_proportion(1.0) * ag.kernels.Strength.steps([2.0], [1.0, 6.5])
+    law = uniform(1.0, 1.0) * ag.kernels.Strength.steps([2.0], [1.0, 6.5])
     vessel = ag.Batch(None, breakage=(0.5 * law, 0.5 * law))
     result = monte_carlo(vessel, EXP, [2.0, 4.0], particles=500, replicates=50, seed=6)
     age = np.array([2.0, 15.0])
@@ -221,7 +201,7 @@ def test_breakage_alone_and_with_a_strength() -> None:
 
 
 def test_fragments_without_end_are_reported() -> None:
-    law = ag.Breakage(rate=lambda v: 1.0 / v, fragments=Fragments())
+    law = uniform(1.0, -1.0)
     with pytest.raises(SimulationError, match="without end"):
         monte_carlo(ag.Batch(None, breakage=law), EXP, 100.0, particles=50, replicates=2, seed=1)
 

@@ -256,7 +256,7 @@ def test_tanks_differ_in_what_happens_in_them() -> None:
     )
     # streams of the whole, per volume of the train; streams of a tank, per volume of its own
     assert set(result.balance.outward) == {"settled", "withdrawn"}
-    assert set(settle.balance.inward) == {"fed", FROM_TANKS.name}
+    assert set(settle.balance.inward) == {FROM_TANKS.name}
     np.testing.assert_allclose(result.balance.settled, settle.balance.settled * 10.0 / 11.0, rtol=1e-12)
     np.testing.assert_allclose(result.balance.fed, result.times / 11.0, rtol=1e-10, atol=1e-15)
     moved = mix.balance.outward[TO_TANKS.name]
