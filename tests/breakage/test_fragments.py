@@ -107,15 +107,12 @@ def test_random_fragments_follow_the_table(law: Any) -> None:
         mine = table.parent == parent
         mean = np.bincount(np.searchsorted(grid, table.volume[mine]), table.count[mine], minlength=grid.size)
         pieces = volume[place::2]
-        drawn = np.array([((pieces > low) & (pieces <= high)).sum(axis=1) for low, high in cells(grid)]).T
-        # with fewer than 25 expected in all, the scatter of the sample says nothing; 20 are 4 times its root
+        # a piece below the range of floats is 0, in the first cell
+        cells = pairwise([-1.0, *grid])
+        drawn = np.array([((pieces > low) & (pieces <= high)).sum(axis=1) for low, high in cells]).T
+        # the scatter of a sample that should hold fewer than 25 in all says little; 20 are 4 times the root of 25
         limit = np.where(events * mean > 25.0, 4.0 * drawn.std(axis=0) / math.sqrt(events), 20.0 / events)
         assert (np.abs(drawn.mean(axis=0) - mean) <= limit + 1e-12).all()
-
-
-def cells(grid: np.ndarray) -> Any:
-    """Lower and upper ends; a piece below the range of floats is 0."""
-    return pairwise([-1.0, *grid])
 
 
 @pytest.mark.parametrize("law", CASES, ids=repr)

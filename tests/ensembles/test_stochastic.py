@@ -233,6 +233,9 @@ def test_progress_is_told() -> None:
     assert (np.diff([fraction for fraction, _ in told]) >= 0.0).all()
 
 
+UNCERTAIN = ag.Breakage(rate=lambda v: v, fragments=ag.fragments.power_law(exponent=-0.6))
+
+
 def run(**changes: Any) -> EnsembleResult:
     arguments: dict[str, Any] = {
         "vessel": ag.Batch(ag.kernels.constant(1.0)), "start": MONO, "times": [1.0],
@@ -256,6 +259,7 @@ def run(**changes: Any) -> EnsembleResult:
             "streams or losses",
         ),
         ({"vessel": ag.Batch(ag.kernels.from_function(lambda v, w: v + 0 * w))}, "one way"),
+        ({"vessel": ag.Batch(None, breakage=UNCERTAIN)}, "drawn at random"),
     ],
     ids=str,
 )

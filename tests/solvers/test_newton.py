@@ -83,14 +83,8 @@ def test_the_jacobian_is_that_of_the_rates_of_all_tanks() -> None:
 
 
 def test_particles_that_never_come_to_rest_leave_no_solution() -> None:
-    """Each step is of the size of all that is there, on a grid that ends as on one that grows."""
-    vessel = ag.Batch(ag.kernels.constant(1.0))
-    for automatic in (False, True):
-        guess = SCHEME.project(closed.EXPONENTIAL, GRID)
-        search = Search(
-            vessel, SCHEME, Ladder(SCHEME, GRID, automatic), {}, guess, float(guess @ GRID.volume)
-        )
-        assert search.newton(guess[None, :], GRID, None) is None
+    search, number = search_for(ag.Batch(ag.kernels.constant(1.0)), closed.EXPONENTIAL)
+    assert search.newton(number, GRID, None) is None
 
 
 def test_states_are_placed_where_pivots_agree() -> None:
