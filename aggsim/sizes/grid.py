@@ -144,6 +144,18 @@ class SizeGrid:
         below = last * (first / last) ** (np.arange(steps) / steps)
         return SizeGrid(np.concatenate([below, self.volume]), ratio=self.ratio)
 
+    def without_gaps(self) -> SizeGrid:
+        """This grid with pivots between those that are farther apart than the ones at its top.
+
+        Whole monomers stay pivots; fragments need the sizes between them.
+        """
+        if self.ratio is None:
+            return self
+        x = self.volume
+        steps = np.ceil(np.log(x[1:] / x[:-1]) / np.log(self.ratio) - 1e-9).astype(int)
+        parts = [a * (b / a) ** (np.arange(k) / k) for a, b, k in zip(x[:-1], x[1:], steps, strict=True)]
+        return SizeGrid(np.concatenate([*parts, x[-1:]]), ratio=self.ratio)
+
     def coarser(self, factor: float) -> SizeGrid:
         """A grid of the same range with `factor` times fewer sections where this one is geometric.
 

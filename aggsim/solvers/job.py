@@ -92,7 +92,10 @@ def _result(run: Run, status: Status, scheme: Scheme, method: Method, rtol: floa
             inward={s.name: v for s, v in carried.items() if s.inward},
             outward={s.name: v for s, v in carried.items() if not s.inward},
         )
-        return replace(balance, negative_share=-volume.sum(axis=1) / balance.scale)
+        # of what is there, or was there before it was washed out; not of all that ever passed
+        there = np.maximum.accumulate(np.maximum(balance.present, initial))
+        share = np.divide(-volume.sum(axis=1), there, out=np.zeros(times.size), where=there > 0.0)
+        return replace(balance, negative_share=share)
 
     whole = account(shares, [stream for stream in run.streams if not stream.internal])
     if shares.size == 1:

@@ -92,13 +92,16 @@ class Search:
             if step is None:
                 gain = np.abs(rates) / (np.abs(number) + FIRST_STEP * self.scale(grid))
                 step = 1.0 / max(float(gain.max()), 1e-300)
+            before = 0.0  # volume in negative sections, which a step may leave but not make more
             for _ in range(ATTEMPTS):
                 jacobian = self._jacobian(system, number)
                 change = self._step(jacobian, rates, number, grid.volume, step)
                 there = number + change
                 negative = -float(self._shares @ (np.minimum(there, 0.0) @ grid.volume))
                 self.iterations += 1
-                if not np.isfinite(there).all() or negative > NEGATIVE * self._volume_of(there, grid):
+                if not np.isfinite(there).all() or negative > max(
+                    NEGATIVE * self._volume_of(there, grid), before
+                ):
                     step = 0.25 * min(step, 1e12 / max(float(np.abs(jacobian).max()), 1e-300))
                     continue
                 size = np.abs(number) + FLOOR * self.scale(grid)
@@ -107,7 +110,7 @@ class Search:
                 ratio = _norm(rates / size) / max(
                     _norm(after / (np.abs(there) + FLOOR * self.scale(grid))), 1e-300
                 )
-                number, rates = there, after
+                number, rates, before = there, after, negative
                 if largest < TOLERANCE and np.isinf(step):
                     return Found(number, grid, system, self._jacobian(system, number), largest)
                 # a small change proves nothing while the pseudo time step is short: the last one is a full step

@@ -38,6 +38,7 @@ class Row(NamedTuple):
     span: int
 
 
+SAME_TIME = 1e-13  # relative; times no further apart than round-off are one, and no method steps between them
 ATOL = 1e-6  # absolute tolerance over rtol, in units of the number or volume scale of a section
 
 
@@ -214,7 +215,14 @@ class Run:
         enough = min(TOP_SHARE, self.rtol)
         next_output = bisect_right(outputs, self._time)
         while self._time < stop:
-            failure = stepper.step(min(outputs[next_output], stop))
+            goal = min(outputs[next_output], stop)
+            if goal - self._time <= SAME_TIME * goal:
+                self._time = goal
+                if goal == outputs[next_output]:
+                    self._record()
+                    next_output += 1
+                continue
+            failure = stepper.step(goal)
             if failure is not None:
                 stalled = Status(Outcome.STALLED, self._time, f"{self.method.name}: {failure}")
                 return self._gelled(AT_THE_END) or stalled

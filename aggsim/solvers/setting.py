@@ -12,7 +12,7 @@ from aggsim.schemes import Scheme
 from aggsim.sizes import Mixture, SizeGrid, StartingDistribution
 from aggsim.vessels import Vessel
 
-FRAGMENT_ROOM = 12.0  # doublings below the start where breakage has no smallest piece
+FRAGMENT_ROOM = 24.0  # doublings below the start where breakage has no smallest piece
 
 
 def starts_of(vessel: Vessel, start: Any) -> list[StartingDistribution | None]:
@@ -48,9 +48,15 @@ def default_grid(
         return grid
     first = float(grid.volume[0])
     smallest = vessel.smallest if vessel.smallest > 0.0 else first / 2.0**FRAGMENT_ROOM
-    return grid.extended_down(smallest) if smallest < first * (1.0 - 1e-9) else grid
+    return grid.without_gaps().extended_down(smallest) if smallest < first * (1.0 - 1e-9) else grid
 
 
 def project_or_none(scheme: Scheme, start: StartingDistribution | None, grid: SizeGrid) -> FloatArray:
     """Numbers (n_sections,) [1/m3] of a start, none for clear liquid."""
     return np.zeros(grid.sections) if start is None else scheme.project(start, grid)
+
+
+def expect(value: Any, kind: type, name: str, example: str) -> None:
+    """Refuse an argument of another kind."""
+    if not isinstance(value, kind):
+        raise InputError(f"{name}={value!r} is not a {kind.__name__}. Try: {name}={example}.")

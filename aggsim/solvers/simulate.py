@@ -19,7 +19,7 @@ from aggsim.solvers.accuracy import estimated, refined
 from aggsim.solvers.growth import BEYOND_SHARE
 from aggsim.solvers.job import Job
 from aggsim.solvers.methods import LSODA, Method
-from aggsim.solvers.setting import starts_of
+from aggsim.solvers.setting import expect, starts_of
 from aggsim.vessels import Vessel
 
 NEGATIVE_SHARE = 1e-5  # share of the volume in negative sections above which a run warns
@@ -104,12 +104,12 @@ def simulate(
     ----------
     .. [1] P. G. J. van Dongen, J. Phys. A 20 (1987) 1889, doi:10.1088/0305-4470/20/7/033.
     """
-    _expect(vessel, Vessel, "vessel", "Batch(kernel)")
+    expect(vessel, Vessel, "vessel", "Batch(kernel)")
     each = starts_of(vessel, start)
     scheme = FixedPivot() if scheme is None else scheme
     method = LSODA() if method is None else method
-    _expect(scheme, Scheme, "scheme", "FixedPivot(moments=6)")
-    _expect(method, Method, "method", "methods.LSODA()")
+    expect(scheme, Scheme, "scheme", "FixedPivot(moments=6)")
+    expect(method, Method, "method", "methods.LSODA()")
     rtol = _checks.scalar("rtol", rtol, least=1e-12, most=1e-2, hint="1e-6")
     outputs = _output_times(times)
     job = Job(vessel, each, _within(outputs, vessel), scheme, method)
@@ -117,7 +117,7 @@ def simulate(
         result = refined(job, _accuracy(accuracy, grid), progress)
     else:
         chosen = job.grid() if grid is None else grid
-        _expect(chosen, SizeGrid, "grid", "SizeGrid.geometric(smallest=..., largest=...) or None")
+        expect(chosen, SizeGrid, "grid", "SizeGrid.geometric(smallest=..., largest=...) or None")
         scheme.check(chosen)
         result = job.run(chosen, grid is None, rtol, progress)
         result = replace(result, estimate=Later(lambda: estimated(job, result, grid, rtol)))
@@ -132,11 +132,6 @@ def simulate(
     if status.completed:
         _warn(result, grid is None)
     return result
-
-
-def _expect(value: Any, kind: type, name: str, example: str) -> None:
-    if not isinstance(value, kind):
-        raise InputError(f"{name}={value!r} is not a {kind.__name__}. Try: {name}={example}.")
 
 
 def _output_times(times: Any) -> FloatArray:

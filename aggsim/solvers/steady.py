@@ -2,20 +2,22 @@
 
 from __future__ import annotations
 
+import warnings
 from collections.abc import Callable
 from typing import Any
 
 import numpy as np
 
 from aggsim import _checks
-from aggsim.errors import InputError, SimulationError
+from aggsim.errors import AccuracyWarning, InputError, SimulationError
 from aggsim.result import SteadyBalance, SteadyCurve, SteadyState
 from aggsim.schemes import BEYOND, FixedPivot, Scheme
 from aggsim.sizes import SizeGrid, StartingDistribution
+from aggsim.solvers.growth import BEYOND_SHARE
 from aggsim.solvers.ladder import Ladder
 from aggsim.solvers.methods import BDF
 from aggsim.solvers.newton import Found, Search, eigenvalues
-from aggsim.solvers.setting import default_grid, project_or_none, starts_of
+from aggsim.solvers.setting import default_grid, expect, project_or_none, starts_of
 from aggsim.solvers.simulate import simulate
 from aggsim.vessels import Vessel
 
@@ -74,7 +76,16 @@ def steady_state(
     .. [1] C. T. Kelley and D. E. Keyes, SIAM J. Numer. Anal. 35 (1998) 508, doi:10.1137/S0036142996304796.
     """
     scheme = FixedPivot() if scheme is None else scheme
+    expect(scheme, Scheme, "scheme", "FixedPivot(moments=6)")
     _require_constant(vessel)
+    if near is not None:
+        expect(near, SteadyState, "near", "steady_state(...) of a vessel that is alike")
+        if near.tanks.shape[0] != len(vessel.volumes):
+            _checks.refuse(
+                "near",
+                f"a state of {near.tanks.shape[0]} tanks",
+                f"one of {len(vessel.volumes)}, as the vessel has",
+            )
     closed = not any(not stream.internal for stream in vessel.streams)
     starts: list[StartingDistribution | None] = [None] * len(vessel.volumes)
     if closed or start is not None:
@@ -86,6 +97,7 @@ def steady_state(
     automatic = grid is None
     if grid is None:
         grid = default_grid(scheme, vessel, starts) if near is None else near.grid
+    expect(grid, SizeGrid, "grid", "SizeGrid.geometric(smallest=..., largest=...) or None")
     scheme.check(grid)
     guess = np.array([project_or_none(scheme, one, grid) for one in starts])
     feeds = {id(feed): scheme.project(feed, grid) for feed in vessel.feeds}
@@ -151,9 +163,10 @@ def steady_states(
 def _require_constant(vessel: Vessel) -> None:
     if not isinstance(vessel, Vessel):
         raise InputError(f"vessel={vessel!r} is not a Vessel. Try: vessel=StirredTank(...).")
-    if len(vessel.spans) != 1:
+    if len(vessel.spans) != 1 or np.isfinite(vessel.spans[0].stop):
         raise InputError(
-            "vessel has several stages, and no steady state but that of one of them. Try: the vessel of that stage."
+            "vessel has several stages or ends at a stated time, and no steady state but that of one stage. "
+            "Try: the vessel of that stage."
         )
 
 
@@ -163,12 +176,16 @@ def _with_help(search: Search, starts: list[StartingDistribution | None], automa
     number = np.array([project_or_none(scheme, one, grid) for one in starts]) + search.fed
     rates = search.rates(search.system(grid), number)
     fastest = float((np.abs(rates) / (number + search.scale(grid))).max())
+    if fastest == 0.0:
+        return None
     for decade in range(2, DECADES):
-        times = [0.0, 10.0**decade / max(fastest, 1e-300)]
+        times = [0.0, 10.0**decade / fastest]
         chosen = None if automatic else grid
-        late = simulate(
-            search.vessel, starts, times, grid=chosen, scheme=scheme, method=BDF(), raise_unfinished=False
-        )
+        with warnings.catch_warnings():
+            warnings.simplefilter("ignore", AccuracyWarning)  # what counts is the state that is found
+            late = simulate(
+                search.vessel, starts, times, grid=chosen, scheme=scheme, method=BDF(), raise_unfinished=False
+            )
         if not late.status.completed:
             return None
         tanks = np.array([tank.number[-1] for tank in late.tanks] or [late.number[-1]])
@@ -191,19 +208,34 @@ def _record(search: Search, found: Found, integrated: bool) -> SteadyState:
     carried = {s: float(together[grid.sections + BEYOND + search.vessel.streams.index(s)]) for s in outside}
     volume = float(shares @ (number @ x))
     result_grid = search.ladder.result_grid(grid)
+    beyond, fed = float(together[grid.sections + 1]), sum(rate for s, rate in carried.items() if s.inward)
+    relaxation = 1.0 / max(abs(growth), 1e-300)
+    lost = beyond / fed if fed > 0.0 else beyond * relaxation / volume
+    if lost > BEYOND_SHARE and fed == 0.0:
+        raise SimulationError(
+            f"no steady state was found in the {grid.sections} sections up to {grid.volume[-1]:.3g} m3: {lost:.2g} of "
+            "the particle volume grows past them before a disturbance dies out. Try: a larger `largest`."
+        )
+    if lost > BEYOND_SHARE:
+        warnings.warn(
+            f"{lost:.2g} of the particle volume that is fed grows past the top of the grid ({grid.volume[-1]:.3g} m3). "
+            "Try: a larger `largest`; where it stays so, particles gel.",
+            AccuracyWarning,
+            stacklevel=3,
+        )
     tanks = np.pad(number, ((0, 0), (0, result_grid.sections - grid.sections)))
     return SteadyState(
         grid=result_grid,
         number=tanks[-1].copy(),
         balance=SteadyBalance(
             present=volume,
-            beyond_grid=float(together[grid.sections + 1]),
+            beyond_grid=beyond,
             negative_share=-float(shares @ (np.minimum(number, 0.0) @ x)) / volume,
             inward={s.name: rate for s, rate in carried.items() if s.inward},
             outward={s.name: rate for s, rate in carried.items() if not s.inward},
         ),
         stable=growth < 0.0,
-        relaxation_time=1.0 / max(abs(growth), 1e-300),
+        relaxation_time=relaxation,
         iterations=search.iterations,
         residual=found.change,
         integrated=integrated,

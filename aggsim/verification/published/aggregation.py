@@ -13,13 +13,16 @@ import numpy as np
 from scipy.interpolate import make_interp_spline
 
 from aggsim._checks import FloatArray
+from aggsim.inputs import Medium
+from aggsim.kernels import constant
 from aggsim.result import Result
-from aggsim.sizes import SizeGrid
+from aggsim.sizes import Monodisperse, SizeGrid
 from aggsim.solvers import simulate
 from aggsim.verification import closed
 from aggsim.verification.checks import Case, Check
 from aggsim.verification.closed import ClosedSolution
 from aggsim.verification.published.account import closure
+from aggsim.verification.published.physics import DECAY, SMOLUCHOWSKI, equal_pair
 from aggsim.vessels import Batch
 
 GROUP = "Aggregation: closed solutions"
@@ -226,3 +229,20 @@ def closed_solutions() -> Iterator[Check]:
                 allowed = _allowed(k, printed, problem.discrete)
                 yield case.check(f"M{k}", when, printed, result.moment(k)[i], relative=allowed)
         yield closure(f"aggregation: {problem.name}", result)
+
+
+def half_life() -> Iterator[Check]:
+    """Rapid coagulation in SI units, from water and spheres to the time at which half of the number is left."""
+    diameter = 400e-9
+    case = Case(
+        GROUP,
+        "half-life of rapid coagulation, 1e16 spheres of 400 nm per m3 in water at 20 C, as for equal spheres",
+        SMOLUCHOWSKI,
+        "interpolation between outputs",
+    )
+    start = Monodisperse(diameter=diameter, number=1e16)
+    rate = equal_pair(Medium.water(temperature=293.15))
+    result = simulate(Batch(constant(rate)), start, np.linspace(0.0, 40.0, 81))
+    (_, printed), *_ = DECAY.values()
+    yield case.check("half-life [s]", "3 mu/(4 kT N0)", printed, result.number_half_life(), relative=1e-4)
+    yield closure("rapid coagulation", result)
