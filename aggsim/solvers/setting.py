@@ -8,7 +8,7 @@ import numpy as np
 
 from aggsim._checks import FloatArray
 from aggsim.errors import InputError
-from aggsim.schemes import Scheme
+from aggsim.schemes import FixedPivot, Scheme
 from aggsim.sizes import Mixture, SizeGrid, StartingDistribution
 from aggsim.vessels import Vessel
 
@@ -35,6 +35,14 @@ def starts_of(vessel: Vessel, start: Any) -> list[StartingDistribution | None]:
             "vessel that is fed. Try: start=Monodisperse(diameter=400e-9, volume_fraction=1e-5)."
         )
     return each
+
+
+def default_scheme(vessel: Vessel, starts: list[StartingDistribution | None]) -> Scheme:
+    """Sixth order; second order for discrete sizes above the smallest particles, around which it would swing."""
+    laws = [law for law in (*starts, *vessel.feeds) if law is not None]
+    smallest = min(law.limits(1e-4)[0] for law in laws)
+    alone = any(volume > smallest * (1.0 + 1e-9) for law in laws for volume, _ in law.atoms)
+    return FixedPivot(moments=2) if alone else FixedPivot()
 
 
 def default_grid(

@@ -13,15 +13,16 @@ from aggsim import _checks
 from aggsim._checks import FloatArray
 from aggsim.errors import AccuracyWarning, InputError, SimulationError, TimesError
 from aggsim.result import Later, Outcome, Result
-from aggsim.schemes import FixedPivot, Scheme
+from aggsim.schemes import Scheme
 from aggsim.sizes import SizeGrid, StartingDistribution
 from aggsim.solvers.accuracy import estimated, refined
 from aggsim.solvers.growth import BEYOND_SHARE
 from aggsim.solvers.job import Job
 from aggsim.solvers.methods import LSODA, Method
-from aggsim.solvers.setting import expect, starts_of
+from aggsim.solvers.setting import default_scheme, expect, starts_of
 from aggsim.vessels import Vessel
 
+PILED_UP = 1e-2  # share of the number in the first section above which a run with breakage warns
 NEGATIVE_SHARE = 1e-5  # share of the volume in negative sections above which a run warns
 
 
@@ -58,7 +59,8 @@ def simulate(
         the top is counted in `result.balance`; sections far above the particles are taken into use in the same
         way, when they are needed.
     scheme : Scheme, optional
-        Discretisation in size, `FixedPivot(moments=6)` without it.
+        Discretisation in size. Without it `FixedPivot(moments=6)`; `FixedPivot(moments=2)` where start or feed
+        hold single sizes above the smallest one, around which higher orders swing.
     method : Method, optional
         Integration in time, `methods.LSODA()` without it.
     rtol : float
@@ -106,7 +108,7 @@ def simulate(
     """
     expect(vessel, Vessel, "vessel", "Batch(kernel)")
     each = starts_of(vessel, start)
-    scheme = FixedPivot() if scheme is None else scheme
+    scheme = default_scheme(vessel, each) if scheme is None else scheme
     method = LSODA() if method is None else method
     expect(scheme, Scheme, "scheme", "FixedPivot(moments=6)")
     expect(method, Method, "method", "methods.LSODA()")
@@ -130,7 +132,7 @@ def simulate(
             result,
         )
     if status.completed:
-        _warn(result, grid is None)
+        _warn(result, grid is None, vessel)
     return result
 
 
@@ -170,7 +172,16 @@ def _within(outputs: FloatArray, vessel: Vessel) -> FloatArray:
     return np.minimum(outputs, stop)
 
 
-def _warn(result: Result, automatic: bool) -> None:
+def _warn(result: Result, automatic: bool, vessel: Vessel) -> None:
+    last = result.number[-1]
+    if vessel.smallest == 0.0 and last[0] > PILED_UP * last.sum():
+        warnings.warn(
+            f"{last[0] / last.sum():.2g} of the particles stand in the first section ({result.grid.volume[0]:.3g} m3), "
+            "where fragments smaller than it count by volume: their number is too low. Try: Breakage(smallest=...) for "
+            "the volume of particles that do not break, or a grid that reaches lower.",
+            AccuracyWarning,
+            stacklevel=3,
+        )
     beyond = float(result.balance.beyond_grid[-1]) / result.balance.scale
     if beyond > BEYOND_SHARE and not automatic:
         warnings.warn(

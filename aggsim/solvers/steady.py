@@ -9,15 +9,16 @@ from typing import Any
 import numpy as np
 
 from aggsim import _checks
+from aggsim._checks import FloatArray
 from aggsim.errors import AccuracyWarning, InputError, SimulationError
 from aggsim.result import SteadyBalance, SteadyCurve, SteadyState
-from aggsim.schemes import BEYOND, FixedPivot, Scheme
+from aggsim.schemes import BEYOND, Scheme
 from aggsim.sizes import SizeGrid, StartingDistribution
 from aggsim.solvers.growth import BEYOND_SHARE
 from aggsim.solvers.ladder import Ladder
 from aggsim.solvers.methods import BDF
 from aggsim.solvers.newton import Found, Search, eigenvalues
-from aggsim.solvers.setting import default_grid, expect, project_or_none, starts_of
+from aggsim.solvers.setting import default_grid, default_scheme, expect, project_or_none, starts_of
 from aggsim.solvers.simulate import simulate
 from aggsim.vessels import Vessel
 
@@ -45,7 +46,7 @@ def steady_state(
         Pivots. Without it a grid is chosen from start and feeds, and continued upward where particles come near
         its top.
     scheme : Scheme, optional
-        `FixedPivot(moments=6)` without it.
+        As in `simulate` without it.
     near : SteadyState, optional
         A state to begin from, such as that of a neighbouring shear rate.
 
@@ -75,8 +76,6 @@ def steady_state(
     ----------
     .. [1] C. T. Kelley and D. E. Keyes, SIAM J. Numer. Anal. 35 (1998) 508, doi:10.1137/S0036142996304796.
     """
-    scheme = FixedPivot() if scheme is None else scheme
-    expect(scheme, Scheme, "scheme", "FixedPivot(moments=6)")
     _require_constant(vessel)
     if near is not None:
         expect(near, SteadyState, "near", "steady_state(...) of a vessel that is alike")
@@ -87,13 +86,20 @@ def steady_state(
                 f"one of {len(vessel.volumes)}, as the vessel has",
             )
     closed = not any(not stream.internal for stream in vessel.streams)
-    starts: list[StartingDistribution | None] = [None] * len(vessel.volumes)
-    if closed or start is not None:
-        starts = starts_of(vessel, start)
     if not closed and not vessel.feeds:
         raise InputError(
             "vessel loses particles and is fed none: its steady state holds nothing. Try: a feed, or simulate."
         )
+    starts: list[StartingDistribution | None] = [None] * len(vessel.volumes)
+    if closed or start is not None:
+        starts = starts_of(vessel, start)
+    if closed and vessel.smallest is None:
+        raise SimulationError(
+            "no steady state exists: in a closed vessel particles that aggregate without breakage never come to rest. "
+            "Try: breakage, or simulate(...) to see where the distribution is going."
+        )
+    scheme = default_scheme(vessel, starts) if scheme is None else scheme
+    expect(scheme, Scheme, "scheme", "FixedPivot(moments=6)")
     automatic = grid is None
     if grid is None:
         grid = default_grid(scheme, vessel, starts) if near is None else near.grid
@@ -104,6 +110,8 @@ def steady_state(
     everything = sum(feeds.values(), start=guess.sum(axis=0))
     if not closed and start is None:
         guess = np.tile(everything, (len(starts), 1))
+    elif start is not None and start.log_width == 0.0:
+        guess = _spread(guess, grid)
     volume = float(np.array(vessel.volumes) @ (guess @ grid.volume)) if closed else None
     search = Search(vessel, scheme, Ladder(scheme, grid, automatic), feeds, everything, volume)
     if near is not None:
@@ -158,6 +166,15 @@ def steady_states(
         near = states[-1] if states else None
         states.append(steady_state(vessel(value), start=start, grid=grid, scheme=scheme, near=near))
     return SteadyCurve(given, tuple(states))
+
+
+def _spread(number: FloatArray, grid: SizeGrid) -> FloatArray:
+    """A smooth distribution with the volume and ten times the mean volume of single sizes, a better first guess."""
+    x = grid.volume
+    mean = 10.0 * (number @ x) / number.sum(axis=-1)
+    shape = grid.width * np.exp(-x / mean[:, None])
+    out: FloatArray = shape * ((number @ x) / (shape @ x))[:, None]
+    return out
 
 
 def _require_constant(vessel: Vessel) -> None:

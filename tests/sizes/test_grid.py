@@ -146,3 +146,27 @@ def test_grids_are_equal_by_value_and_cannot_be_written_to() -> None:
 def test_malformed_grids_are_refused(make, words: str) -> None:  # type: ignore[no-untyped-def]
     with pytest.raises(GridError, match=words):
         make()
+
+
+def test_gaps_among_monomers_close() -> None:
+    grid = ag.SizeGrid.monomers_then_geometric(1.0, 100.0, per_doubling=3)
+    filled = grid.without_gaps()
+    assert set(grid.volume.tolist()) <= set(filled.volume.tolist())
+    assert (filled.volume[1:] / filled.volume[:-1]).max() <= 2.0 ** (1.0 / 3.0) * (1.0 + 1e-12)
+    geometric = ag.SizeGrid.geometric(smallest=1.0, largest=100.0)
+    np.testing.assert_allclose(geometric.without_gaps().volume, geometric.volume, rtol=1e-13)
+    assert ag.SizeGrid.monomers(1.0, 9).without_gaps() == ag.SizeGrid.monomers(1.0, 9)
+
+
+@pytest.mark.parametrize("factor", [0.5, 1.5, 2.0, 3.0])
+def test_coarser_grids_cover_the_same_range(factor: float) -> None:
+    for grid in (
+        ag.SizeGrid.geometric(smallest=1.0, largest=1e4, per_doubling=4),
+        ag.SizeGrid.geometric(smallest=1.0, largest=1e4, per_doubling=4).extended_down(1e-3),
+        ag.SizeGrid.monomers_then_geometric(1.0, 1e4, 4),
+    ):
+        coarse = grid.coarser(factor)
+        assert coarse.volume[0] == grid.volume[0]
+        assert coarse.volume[-1] >= grid.volume[-1] * (1.0 - 1e-9)
+        assert len(coarse) == pytest.approx(len(grid) / factor, abs=10)
+    assert ag.SizeGrid.monomers(1.0, 9).coarser(factor) == ag.SizeGrid.monomers(1.0, 9)

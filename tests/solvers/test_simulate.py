@@ -125,3 +125,28 @@ def test_a_grid_that_is_far_too_coarse_stops_the_run() -> None:
     )
     assert result.status.outcome is ag.Outcome.UNRESOLVED
     assert "more sections per doubling" in str(result.status)
+
+
+def test_fragments_that_pile_up_in_the_first_section_are_warned_about() -> None:
+    halves = ag.Breakage(
+        rate=ag.rates.power_law(coefficient=1.0, exponent=0.0), fragments=ag.fragments.uniform_binary()
+    )
+    start = ag.Exponential(mean_volume=1.0, number=1.0)
+    grid = ag.SizeGrid.geometric(smallest=1e-3, largest=64.0)
+    with pytest.warns(AccuracyWarning, match="stand in the first section"):
+        ag.simulate(ag.Batch(None, breakage=halves), start, 3.0, grid=grid)
+
+
+def test_single_sizes_on_a_geometric_part_get_second_order() -> None:
+    two = ag.Monodisperse(volume=1.0, number=1.0) + ag.Monodisperse(volume=50.0, number=0.01)
+    mixed = ag.simulate(ag.Batch(ag.kernels.constant(1.0)), two, [0.5, 2.0])
+    assert mixed.settings["scheme"] == "FixedPivot(moments=2)"
+    assert mixed.balance.negative_share.max() < 1e-12
+    np.testing.assert_allclose(mixed.total_number(), 1.01 / (1.0 + 1.01 * np.array([0.25, 1.0])), rtol=1e-5)
+    fed = ag.StirredTank(
+        ag.kernels.constant(1.0), residence_time=1.0, feed=ag.Monodisperse(volume=5.0, number=1.0)
+    )
+    tank = ag.simulate(fed, ag.Exponential(mean_volume=1.0, number=1.0), 3.0)
+    assert tank.settings["scheme"] == "FixedPivot(moments=2)"
+    alone = ag.simulate(ag.Batch(ag.kernels.constant(1.0)), ag.Monodisperse(volume=1.0, number=1.0), 1.0)
+    assert alone.settings["scheme"] == "FixedPivot(moments=6)"

@@ -220,11 +220,18 @@ def closed_solutions() -> Iterator[Check]:
             for size, printed, value in zip(table.at, numbers, found, strict=True):
                 if problem.discrete:
                     yield case.check(
-                        "number of k-mers", f"k = {size:g}, {when}", printed, value, relative=1e-8, absolute=1e-12
+                        "number of k-mers",
+                        f"k = {size:g}, {when}",
+                        printed,
+                        value,
+                        relative=1e-8,
+                        absolute=1e-12,
                     )
                 else:
                     allowed = 3e-8 * (1.0 + (size * mean) ** 2 / 5.0)
-                    yield case.check("density n(v)", f"v = {size:g}, {when}", printed, value, relative=allowed)
+                    yield case.check(
+                        "density n(v)", f"v = {size:g}, {when}", printed, value, relative=allowed
+                    )
             for k, printed in zip(table.orders, moments, strict=True):
                 allowed = _allowed(k, printed, problem.discrete)
                 yield case.check(f"M{k}", when, printed, result.moment(k)[i], relative=allowed)

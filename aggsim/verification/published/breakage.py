@@ -52,9 +52,7 @@ TABLE = {
 }
 
 
-def grid_through(
-    volume: float, smallest: float, largest: float, per_doubling: float
-) -> tuple[SizeGrid, int]:
+def grid_through(volume: float, smallest: float, largest: float, per_doubling: float) -> tuple[SizeGrid, int]:
     """Geometric grid with a pivot at `volume`, and the place of that pivot."""
     below = int(np.ceil(np.log2(volume / smallest) * per_doubling))
     above = int(np.ceil(np.log2(largest / volume) * per_doubling - 1e-9))
@@ -214,7 +212,9 @@ def stirred_tanks() -> Checks:
     """Steady states of one tank and of four, plug flow."""
     for tau in NUMBER:
         name = f"stirred tank, constant kernel, beta N residence time = {tau:g}"
-        case = Case(TANK, f"{name}, monodisperse feed", closed.HOUNSLOW, "every size resolved: printed digits")
+        case = Case(
+            TANK, f"{name}, monodisperse feed", closed.HOUNSLOW, "every size resolved: printed digits"
+        )
         grid = SizeGrid.monomers(1.0, 64 if tau == 1.0 else 600)
         state = steady_state(tank(tau, closed.MONO), grid=grid, scheme=Monomer())
         found: FloatArray = state.number[SIZES.astype(int) - 1]

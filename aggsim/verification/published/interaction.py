@@ -149,9 +149,7 @@ def energies() -> Checks:
     places = [1e9 * h for h in SEPARATIONS]
     for quantity, part, models, given in ENERGIES:
         values = pair_energy(particles, medium, **models).parts[part](SEPARATIONS) / medium.thermal_energy
-        yield from case.each(
-            quantity, "at {:.1f} nm", places, given, values, relative=2e-9, absolute=5.1e-9
-        )
+        yield from case.each(quantity, "at {:.1f} nm", places, given, values, relative=2e-9, absolute=5.1e-9)
     case = Case(
         ENERGY,
         "unequal spheres, radii 100 and 250 nm, 30 and 15 mV, 10 zJ, 0.01 mol/L",
@@ -227,7 +225,9 @@ CRITICAL = {
 def stability() -> Checks:
     """Rapid coagulation, barriers with their stability ratios, critical concentrations."""
     parfitt = "D. N. L. McGown, G. D. Parfitt, J. Phys. Chem. 71 (1967) 449"
-    case = Case(STABILITY, "rapid coagulation", f"{FUCHS}; {HAMAKER}; {parfitt}; {HONIG}", "nine digits given")
+    case = Case(
+        STABILITY, "rapid coagulation", f"{FUCHS}; {HAMAKER}; {parfitt}; {HONIG}", "nine digits given"
+    )
     for hamaker, (film, free) in RAPID.items():
         at = f"A = {hamaker:g} kT"
         energy = pair_energy(sphere(100e-9, hamaker * KT), salt_water(0.0), double_layer=None)

@@ -94,7 +94,9 @@ def water_properties() -> Checks:
         yield case.check("viscosity [mPa s]", at, viscosity, 1e3 * medium.viscosity, absolute=0.6e-5)
         found = 1e6 * medium.kinematic_viscosity
         yield case.check("kinematic viscosity [mm2/s]", at, kinematic, found, absolute=1e-5)
-        yield case.check("relative permittivity", at, permittivity, medium.relative_permittivity, relative=1.5e-3)
+        yield case.check(
+            "relative permittivity", at, permittivity, medium.relative_permittivity, relative=1.5e-3
+        )
     case = Case(
         WATER,
         "permittivity as measured",
@@ -105,7 +107,11 @@ def water_properties() -> Checks:
         measured = malmberg_maryott(celsius)
         tolerance = 1e-3 if celsius == 25.0 else 2e-3
         yield case.check(
-            "relative permittivity", f"{celsius:g} C", measured, medium.relative_permittivity, relative=tolerance
+            "relative permittivity",
+            f"{celsius:g} C",
+            measured,
+            medium.relative_permittivity,
+            relative=tolerance,
         )
     case = Case(
         WATER,
@@ -250,9 +256,7 @@ def settling_speeds() -> Checks:
         speed = float(settling_velocity(QUARTZ, ROOM, volume(d), drag=SchillerNaumann()))
         yield case.check("speed by Stokes [m/s]", at, stokes, slow, relative=1e-6)
         yield case.check("speed by Schiller and Naumann [m/s]", at, beyond, speed, relative=1e-6)
-        yield case.check(
-            "Reynolds number", at, reynolds, speed * d / ROOM.kinematic_viscosity, relative=5e-5
-        )
+        yield case.check("Reynolds number", at, reynolds, speed * d / ROOM.kinematic_viscosity, relative=5e-5)
     found = [SchillerNaumann().coefficient(reynolds) for reynolds in DRAG]
     yield from case.each("drag coefficient", "Re = {:g}", DRAG, DRAG.values(), found, relative=1.1e-6)
     case = Case(

@@ -32,7 +32,9 @@ from aggsim.verification.reduced import brownian
 from aggsim.vessels import Batch
 
 GROUP = "Aggregation: self-preserving distribution"
-SOURCE = "S. K. Friedlander, C. S. Wang, J. Colloid Interface Sci. 22 (1966) 126, doi:10.1016/0021-9797(66)90073-7"
+SOURCE = (
+    "S. K. Friedlander, C. S. Wang, J. Colloid Interface Sci. 22 (1966) 126, doi:10.1016/0021-9797(66)90073-7"
+)
 
 SPHERES = 1.0 / 3.0
 FRACTAL = 1.0 / 2.1
@@ -134,7 +136,9 @@ def _common(
     for k, printed in moments.items():
         # outside the orders 0 to 5/2 that births keep, the error of the grid grows
         tolerance = 2e-7 if 0.0 < k <= 3.0 else 5e-7 if k == -FRACTAL else 1e-6
-        yield case.check("reduced moment", f"order {k:.4g}", printed, reduced_moment(result, k), relative=tolerance)
+        yield case.check(
+            "reduced moment", f"order {k:.4g}", printed, reduced_moment(result, k), relative=tolerance
+        )
     found = psi(result, np.array(list(points)))
     for (eta, printed), value in zip(points.items(), found, strict=True):
         # ln psi falls like -1.03 eta, so that its error grows like a power of eta, here (1 + eta)^2 to be simple

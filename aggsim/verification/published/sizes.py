@@ -82,9 +82,7 @@ def mean_sizes() -> Iterator[Check]:
     yield case.check("span", "r = 3", SPAN, means.span(d10, d50, d90), relative=2e-7)
     surface = 6.0 / (1050.0 * float(means.mean_diameter(x, n, 3, 2))) / 1000.0
     yield case.check("specific surface [m2/g]", "1050 kg/m3", SURFACE, surface, relative=1e-8)
-    case = Case(
-        GROUP, "counts 100, 80, 30, 5 at 1, 2, 3, 4 um", "ISO 9276-2:2014", "nine digits given"
-    )
+    case = Case(GROUP, "counts 100, 80, 30, 5 at 1, 2, 3, 4 um", "ISO 9276-2:2014", "nine digits given")
     volume = means.volume_of(np.arange(1.0, 5.0) * MICRON)
     for (p, q), microns in MEANS_OF_COUNTS.items():
         found = float(means.mean_diameter(volume, COUNTS, p, q)) / MICRON

@@ -25,7 +25,9 @@ from aggsim.verification.reduced import brownian, every_size, shear
 from aggsim.vessels import Batch
 
 GROUP = "Aggregation: kernels without a closed solution"
-SOURCE = f"{SMOLUCHOWSKI} (equation and kernels); direct solution, every size resolved, Runge-Kutta of 8th order"
+SOURCE = (
+    f"{SMOLUCHOWSKI} (equation and kernels); direct solution, every size resolved, Runge-Kutta of 8th order"
+)
 STATED = 1e-7
 
 KMERS = np.array([1, 2, 3, 5, 10])
@@ -59,7 +61,9 @@ BROWNIAN_MOMENTS = np.array(
 MOMENT_ORDERS = [0.0, 2.0, 3.0, 1.0 / 3.0]
 
 # t; M0, M2, M3, with a = 1 / 1.8; then n1, n2, n5, n10
-FRACTAL_MOMENTS = np.array([[1, 0.6629689706, 2.02784027, 5.7093360], [10, 0.1548560445, 11.84203429, 210.98009]])
+FRACTAL_MOMENTS = np.array(
+    [[1, 0.6629689706, 2.02784027, 5.7093360], [10, 0.1548560445, 11.84203429, 210.98009]]
+)
 FRACTAL_NUMBERS = np.array(
     [
         [1, 0.4415226946, 0.1458342336, 0.005898443801, 3.059954547e-5],
@@ -145,7 +149,12 @@ def kernels_without_solution() -> Iterator[Check]:
                 found = result.number[:, problem.kmers - 1]
                 for time, row, values in zip(problem.times, problem.numbers, found, strict=True):
                     yield from case.each(
-                        "number of k-mers", f"k = {{}}, t = {time:g}", problem.kmers, row[1:], values, relative=STATED
+                        "number of k-mers",
+                        f"k = {{}}, t = {time:g}",
+                        problem.kmers,
+                        row[1:],
+                        values,
+                        relative=STATED,
                     )
             for column, k in enumerate(MOMENT_ORDERS[: problem.moments.shape[1] - 1], start=1):
                 printed, moment = problem.moments[:, column], result.moment(k)
