@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
+from functools import cached_property
 
 import numpy as np
 
@@ -57,10 +58,10 @@ class SteadyState(Readings):
         Number of particles in each section; of the last tank where there are several.
     balance : SteadyBalance
         Account of all tanks together.
-    stable : bool
-        True where every small disturbance that keeps the conserved volume dies out.
-    relaxation_time : float
-        Time [s] in which the slowest disturbance falls to 1/e; of the fastest growth where it is not stable.
+    jacobian : (n_tanks n, n_tanks n) 1/s
+        Exact derivative of the rates by the numbers in the first n sections of each tank, those in use.
+    closed : bool
+        True where the particle volume is conserved.
     iterations : int
         Newton steps that were taken.
     residual : float
@@ -76,8 +77,8 @@ class SteadyState(Readings):
     grid: SizeGrid
     number: FloatArray
     balance: SteadyBalance
-    stable: bool
-    relaxation_time: float
+    jacobian: FloatArray = field(repr=False)
+    closed: bool
     iterations: int
     residual: float
     integrated: bool
@@ -85,8 +86,33 @@ class SteadyState(Readings):
     tanks: FloatArray
 
     def __post_init__(self) -> None:
-        for array in (self.number, self.tanks):
+        for array in (self.number, self.tanks, self.jacobian):
             array.setflags(write=False)
+
+    @cached_property
+    def _growth(self) -> float:
+        """Largest real part of the eigenvalues of the Jacobian [1/s], without that of a conserved volume.
+
+        Where no tank depends on one behind it, the eigenvalues are those of each tank.
+        """
+        size = self.jacobian.shape[0] // self.tanks.shape[0]
+        if any(self.jacobian[k : k + size, k + size :].any() for k in range(0, self.jacobian.shape[0], size)):
+            size = self.jacobian.shape[0]
+        blocks = [self.jacobian[k : k + size, k : k + size] for k in range(0, self.jacobian.shape[0], size)]
+        values = np.concatenate([np.linalg.eigvals(block) for block in blocks])
+        if self.closed:
+            values = np.delete(values, int(np.abs(values).argmin()))
+        return float(values.real.max())
+
+    @property
+    def stable(self) -> bool:
+        """True where every small disturbance that keeps the conserved volume dies out."""
+        return self._growth < 0.0
+
+    @property
+    def relaxation_time(self) -> float:
+        """Time [s] in which the slowest disturbance falls to 1/e; of the fastest growth where it is not stable."""
+        return 1.0 / max(abs(self._growth), 1e-300)
 
     def tank(self, k: int) -> Tank:
         """Readings of tank number k (from 0)."""

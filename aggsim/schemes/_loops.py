@@ -219,7 +219,10 @@ def fragment_matrix(x, order, half, rate, parent, volume, count):  # type: ignor
     n = x.size
     out = np.zeros((n, n))
     root = np.sqrt(x)
-    weight = np.empty(order)
+    below = np.empty(order)
+    scale = np.empty(order)
+    last_a, last_nodes = -1, -1
+    # the points of a parent are shared by few stencils, whose denominators are worth keeping
     for t in range(parent.size):
         i, v = parent[t], volume[t]
         if v <= x[0]:
@@ -229,12 +232,22 @@ def fragment_matrix(x, order, half, rate, parent, volume, count):  # type: ignor
         cell = min(max(np.searchsorted(x, v, side="right") - 1, 0), i - 1)
         a = max(0, min(cell - nodes // 2 + 1, i + 1 - nodes))
         node, at = (root, np.sqrt(v)) if half and nodes > 2 else (x, v)
+        if a != last_a or nodes != last_nodes:
+            last_a, last_nodes = a, nodes
+            for p in range(nodes):
+                scale[p] = 1.0
+                for q in range(nodes):
+                    if q != p:
+                        scale[p] *= node[a + p] - node[a + q]
+                scale[p] = 1.0 / scale[p]
+        before = count[t]
         for p in range(nodes):
-            weight[p] = count[t]
-            for q in range(nodes):
-                if q != p:
-                    weight[p] *= (at - node[a + q]) / (node[a + p] - node[a + q])
-            out[a + p, i] += weight[p]
+            below[p] = before  # product over the nodes below p
+            before *= at - node[a + p]
+        after = 1.0
+        for p in range(nodes - 1, -1, -1):
+            out[a + p, i] += below[p] * after * scale[p]
+            after *= at - node[a + p]
     for i in range(n):
         left = 0.0
         for k in range(i):

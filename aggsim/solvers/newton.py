@@ -200,12 +200,3 @@ def _solve_in_turn(matrix: FloatArray, right: FloatArray, size: int) -> FloatArr
         rows = slice(k, k + size)
         out[rows] = np.linalg.solve(matrix[rows, rows], right[rows] - matrix[rows, :k] @ out[:k])
     return out
-
-
-def eigenvalues(matrix: FloatArray, size: int) -> FloatArray:
-    """Real parts of the eigenvalues of a Jacobian of tanks with so many sections each."""
-    if not in_turn(matrix, size):
-        size = matrix.shape[0]
-    blocks = [matrix[k : k + size, k : k + size] for k in range(0, matrix.shape[0], size)]
-    real: FloatArray = np.concatenate([np.linalg.eigvals(block).real for block in blocks])
-    return real

@@ -17,11 +17,13 @@ from aggsim.sizes import SizeGrid, StartingDistribution
 from aggsim.solvers.growth import BEYOND_SHARE
 from aggsim.solvers.ladder import Ladder
 from aggsim.solvers.methods import BDF
-from aggsim.solvers.newton import Found, Search, eigenvalues
+from aggsim.solvers.newton import Found, Search
 from aggsim.solvers.setting import default_grid, default_scheme, expect, project_or_none, starts_of
 from aggsim.solvers.simulate import simulate
 from aggsim.vessels import Vessel
 
+UNSEEN = 1e-12  # share of the volume past the top, in the time of the quickest section, that is not looked at
+UNSEEN = 1e-12  # share of the volume past the top, in the time of the quickest section, that is not looked at
 DECADES = 12  # of time that the help of an integration may cover
 
 
@@ -118,8 +120,7 @@ def steady_state(
         found = search.newton(search.placed(near), search.ladder.whole, np.inf)
         if found is not None:
             return _record(search, found, False)
-    begin = search.ladder.first(everything)
-    found = search.newton(np.array([search.ladder.cut(one, begin) for one in guess]), begin, None)
+    found = search.newton(guess, grid, None)
     integrated = found is None
     if found is None:
         found = _with_help(search, starts, automatic)
@@ -215,10 +216,6 @@ def _with_help(search: Search, starts: list[StartingDistribution | None], automa
 def _record(search: Search, found: Found, integrated: bool) -> SteadyState:
     grid, number, system = found.grid, found.number, found.system
     shares, x = np.array(search.vessel.volumes), grid.volume
-    values = eigenvalues(found.jacobian, grid.sections)
-    if search.volume is not None:  # without the eigenvalue of the conserved volume
-        values = np.delete(values, int(np.abs(values).argmin()))
-    growth = float(values.max())
     rates = search.all_rates(system, number)
     together = shares @ rates
     outside = [stream for stream in search.vessel.streams if not stream.internal]
@@ -226,22 +223,8 @@ def _record(search: Search, found: Found, integrated: bool) -> SteadyState:
     volume = float(shares @ (number @ x))
     result_grid = search.ladder.result_grid(grid)
     beyond, fed = float(together[grid.sections + 1]), sum(rate for s, rate in carried.items() if s.inward)
-    relaxation = 1.0 / max(abs(growth), 1e-300)
-    lost = beyond / fed if fed > 0.0 else beyond * relaxation / volume
-    if lost > BEYOND_SHARE and fed == 0.0:
-        raise SimulationError(
-            f"no steady state was found in the {grid.sections} sections up to {grid.volume[-1]:.3g} m3: {lost:.2g} of "
-            "the particle volume grows past them before a disturbance dies out. Try: a larger `largest`."
-        )
-    if lost > BEYOND_SHARE:
-        warnings.warn(
-            f"{lost:.2g} of the particle volume that is fed grows past the top of the grid ({grid.volume[-1]:.3g} m3). "
-            "Try: a larger `largest`; where it stays so, particles gel.",
-            AccuracyWarning,
-            stacklevel=3,
-        )
     tanks = np.pad(number, ((0, 0), (0, result_grid.sections - grid.sections)))
-    return SteadyState(
+    state = SteadyState(
         grid=result_grid,
         number=tanks[-1].copy(),
         balance=SteadyBalance(
@@ -251,11 +234,32 @@ def _record(search: Search, found: Found, integrated: bool) -> SteadyState:
             inward={s.name: rate for s, rate in carried.items() if s.inward},
             outward={s.name: rate for s, rate in carried.items() if not s.inward},
         ),
-        stable=growth < 0.0,
-        relaxation_time=relaxation,
+        jacobian=found.jacobian,
+        closed=search.volume is not None,
         iterations=search.iterations,
         residual=found.change,
         integrated=integrated,
         settings={"scheme": repr(search.scheme)},
         tanks=tanks,
     )
+    _require_inside(state, beyond, fed, float(np.abs(np.diag(found.jacobian)).max()))
+    return state
+
+
+def _require_inside(state: SteadyState, beyond: float, fed: float, fastest: float) -> None:
+    """Refuse or warn where too much grows past the top of the grid [1/s]; `fastest` is the quickest rate [1/s]."""
+    volume, top = state.balance.present, state.grid.volume[-1]
+    if fed == 0.0 and beyond > UNSEEN * fastest * volume:
+        lost = beyond * state.relaxation_time / volume
+        if lost > BEYOND_SHARE:
+            raise SimulationError(
+                f"no steady state was found in the {state.grid.sections} sections up to {top:.3g} m3: {lost:.2g} of "
+                "the particle volume grows past them before a disturbance dies out. Try: a larger `largest`."
+            )
+    elif fed > 0.0 and beyond > BEYOND_SHARE * fed:
+        warnings.warn(
+            f"{beyond / fed:.2g} of the particle volume that is fed grows past the top of the grid ({top:.3g} m3). "
+            "Try: a larger `largest`; where it stays so, particles gel.",
+            AccuracyWarning,
+            stacklevel=4,
+        )

@@ -84,7 +84,7 @@ def test_repr_says_what_matters(state: SteadyState) -> None:
     ):
         assert words in text
     assert "not stable" not in text
-    other = repr(dataclasses.replace(state, stable=False, integrated=True))
+    other = repr(dataclasses.replace(state, jacobian=-state.jacobian, integrated=True))
     assert "not stable" in other
     assert "integration in time" in other
 
@@ -105,3 +105,22 @@ def test_a_curve_reads_state_by_state() -> None:
     by_number = curve.quantile_diameter(0.5, r=0)
     np.testing.assert_allclose(number, np.gradient(np.log(by_number), np.log(rates)), rtol=1e-12)
     assert (np.diff(curve.total_number()) < 0.0).all()
+
+
+@pytest.mark.parametrize("back", [False, True], ids=["in turn", "with a recycle"])
+@pytest.mark.parametrize("closed", [False, True])
+def test_stability_is_read_from_the_jacobian(back: bool, closed: bool) -> None:
+    size, tanks = 4, 3
+    matrix = np.random.default_rng(2).normal(size=(tanks * size, tanks * size)) - 3.0 * np.eye(tanks * size)
+    for k in range(0, tanks * size, size):
+        if not back:
+            matrix[k : k + size, k + size :] = 0.0
+    grid = ag.SizeGrid.geometric(smallest=1.0, largest=8.0, per_doubling=1)
+    number = np.ones((tanks, size))
+    balance = SteadyBalance(present=1.0, beyond_grid=0.0, negative_share=0.0)
+    state = SteadyState(grid, number[-1], balance, matrix, closed, 1, 0.0, False, {}, number)
+    values = np.linalg.eigvals(matrix)
+    if closed:  # the one nearest to zero belongs to the conserved volume
+        values = np.delete(values, np.abs(values).argmin())
+    assert state.stable is bool(values.real.max() < 0.0)
+    assert state.relaxation_time == pytest.approx(1.0 / abs(values.real.max()), rel=1e-9)

@@ -11,7 +11,7 @@ import pytest
 import aggsim as ag
 from aggsim.errors import InputError
 from aggsim.solvers.ladder import Ladder
-from aggsim.solvers.newton import Search, eigenvalues, in_turn
+from aggsim.solvers.newton import Search, in_turn
 
 Array = np.ndarray
 
@@ -108,13 +108,10 @@ def test_a_strength_is_met_when_the_vessel_is_prepared() -> None:
 
 
 @pytest.mark.parametrize("back", [False, True], ids=["in turn", "with a recycle"])
-def test_tanks_in_turn_have_the_eigenvalues_of_each(back: bool) -> None:
-    random = np.random.default_rng(2)
+def test_tanks_in_turn_are_recognised(back: bool) -> None:
     size, tanks = 4, 3
-    matrix = random.normal(size=(tanks * size, tanks * size))
+    matrix = np.random.default_rng(2).normal(size=(tanks * size, tanks * size))
     for k in range(0, tanks * size, size):
         if not back:
             matrix[k : k + size, k + size :] = 0.0
     assert in_turn(matrix, size) is not back
-    found = np.sort(eigenvalues(matrix, size))
-    np.testing.assert_allclose(found, np.sort(np.linalg.eigvals(matrix).real), atol=1e-10)

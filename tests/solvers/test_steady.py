@@ -266,7 +266,7 @@ def test_what_never_comes_to_rest_raises(name: str) -> None:
     vessel, start = NEVER[name]
     smallest = 1.0 if start is MONO else 1e-4
     grid = ag.SizeGrid.geometric(smallest=smallest, largest=500.0, per_doubling=2)
-    with pytest.raises(SimulationError, match="no steady state (was found in|exists)"):
+    with pytest.raises(SimulationError, match=r"no steady state (was found in|exists)"):
         ag.steady_state(vessel, start=start, grid=grid, scheme=ag.FixedPivot(moments=2))
 
 
