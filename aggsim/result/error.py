@@ -59,6 +59,13 @@ class Snapshot(Readings):
         return cls(result.grid, result.number)
 
     @classmethod
+    def with_bottom(cls, result: Any) -> Snapshot:
+        """The numbers of a Result, with those of the first section, where smaller fragments are counted, twice."""
+        number = np.array(result.number)
+        number[:, 0] *= 2.0
+        return cls(result.grid, number)
+
+    @classmethod
     def without_and_with_top(cls, result: Any) -> tuple[Snapshot, Snapshot]:
         """The numbers of a Result, and those with what passed the top put back there by volume."""
         number = np.array([result.number, result.number])
@@ -105,8 +112,8 @@ class ErrorEstimate:
     ----------
     times : (n_times,) s
     comparisons : tuple of Comparison
-        What the estimate is made of. Causes: "size and time" (one coarse run stands for both) and "top" (what
-        passed the top of the grid).
+        What the estimate is made of. Causes: "size and time" (one coarse run stands for both), "top" (what passed
+        the top of the grid), and with breakage "bottom" (fragments smaller than the first section).
     apart : callable
         Makes the comparisons with the causes "size" (discretisation) and "time" (integration) apart, which takes
         one more coarse run.
@@ -151,7 +158,7 @@ class ErrorEstimate:
         """`parts` of a named figure, from readings that each run makes once."""
         out = {}
         for c in pairs:
-            if figure in _QUANTILES and c.one.grid.monomer is not None and c.cause != "top":
+            if figure in _QUANTILES and c.one.grid.monomer is not None and c.cause not in {"top", "bottom"}:
                 errors = [c.error(c.one.figures[q], c.other.figures[q]) for q in _QUANTILES]
                 out[c.cause] = self._envelope(_AT_MONOMERS * np.max(errors, axis=0), _NEAR_MONOMERS)
             else:

@@ -21,6 +21,10 @@ from aggsim.solvers.job import Job
 
 COARSE = 2.0  # ratio of spacings between a result and the one coarse run of a quick estimate
 LOOSE = 30.0  # ratio of their tolerances
+EMPTY, ABOVE = (
+    1e-14,
+    4.0,
+)  # sections with less than this share of the fullest are empty; doublings kept above them
 OVER = 16.0  # ratio of their errors, less 1, on the safe side of sixth order (63); 3 of second order
 
 STEP = math.sqrt(2.0)  # ratio of spacings between runs of a refinement
@@ -36,60 +40,69 @@ FIRST_ERROR = 1e-3  # what the first grid is good for, with so many times the us
 FIRST, FIRST_AT_SINGLE_SIZES = 0.7, 1.0
 
 
-def estimated(job: Job, result: Result, grid: SizeGrid | None, rtol: float) -> ErrorEstimate:
-    """Estimate from one coarse run; `grid` as the user gave it."""
+def estimated(job: Job, result: Result, rtol: float) -> ErrorEstimate:
+    """Estimate of a run from one coarse run."""
     if not result.status.completed:
         raise SimulationError(
             "a run that ended early has no error estimate. Try: times before its end.", result
         )
     sized = math.isfinite(job.scheme.order)
-    coarse_grid = (job.grid(1.0 / COARSE) if grid is None else grid.coarser(COARSE)) if sized else result.grid
-    coarse = job.run(coarse_grid, grid is None, min(LOOSE * rtol, 1e-2))
+    # where the particles went is known: the coarse run takes these sizes into use from the start
+    reached = _reached(result)
+    coarse_grid = reached.coarser(COARSE) if sized else reached
+    coarse = job.run(coarse_grid, False, min(LOOSE * rtol, 1e-2), yardstick=True)
     if not coarse.status.completed:
         raise SimulationError(
             f"the coarse run of the error estimate ended early: {coarse.status} Try: a finer grid, or accuracy=1e-3.",
             coarse,
         )
     over = min(OVER, COARSE ** job.order(result.grid) - 1.0)
-    (one, top), other = _top(result), Snapshot.of(coarse)
+    (one, ends), other = _ends(result, job), Snapshot.of(coarse)
     if not sized:
         return ErrorEstimate(
-            result.times, (Comparison("time", one, other, over), top), None, FLOOR * rtol, runs=2
+            result.times, (Comparison("time", one, other, over), *ends), None, FLOOR * rtol, runs=2
         )
 
     def apart() -> tuple[Comparison, ...]:
-        tight = Snapshot.of(job.run(coarse_grid, grid is None, rtol))
-        return Comparison("size", one, tight, over), Comparison("time", tight, other, over), top
+        tight = Snapshot.of(job.run(coarse_grid, False, rtol, yardstick=True))
+        return Comparison("size", one, tight, over), Comparison("time", tight, other, over), *ends
 
-    comparisons = (Comparison("size and time", one, other, over), top)
+    comparisons = (Comparison("size and time", one, other, over), *ends)
     return ErrorEstimate(result.times, comparisons, apart, FLOOR * rtol, runs=2)
+
+
+def _reached(result: Result) -> SizeGrid:
+    """The grid of a result up to some way above its largest particles."""
+    grid = result.grid
+    tanks = [tank.number for tank in result.tanks] or [result.number]
+    held = np.abs(np.concatenate(tanks)).max(axis=0) * grid.volume
+    used = int(np.flatnonzero(held > EMPTY * held.max())[-1])
+    count = int(np.searchsorted(grid.volume, 2.0**ABOVE * grid.volume[used])) + 1
+    if count >= grid.sections:
+        return grid
+    return SizeGrid(grid.volume[:count], ratio=grid.ratio, monomer=grid.monomer)
 
 
 def refined(job: Job, accuracy: float, progress: object) -> Result:
     """Result whose estimated error is below `accuracy`, or the best that can be had."""
-    full = job.order(job.grid())
-    order = full if math.isinf(full) else min(full, TRUSTED_ORDER)
-    sized = math.isfinite(full)
+    sized = math.isfinite(job.scheme.order)
     single = any(law is not None and law.atoms for law in (*job.starts, *job.vessel.feeds))
     # a first pair that nearly always does is cheaper than a coarser one that must be followed by another
     first = FIRST_AT_SINGLE_SIZES if single else FIRST
-    finer = first * max(1.0, (FIRST_ERROR / accuracy) ** (1.0 / min(full, 6.0))) if sized else 1.0
+    finer = first * max(1.0, (FIRST_ERROR / accuracy) ** (1.0 / min(job.scheme.order, 6.0))) if sized else 1.0
     rtol = max(FIRST_TOLERANCE * accuracy, 1e-12)
     best: tuple[float, Result] | None = None
     runs, finest = 0, FINEST
-    known: dict[tuple[float, float], Result] = {}
-
-    def run(density: float, tolerance: float) -> Result:
-        nonlocal runs
-        key = (round(density, 9), tolerance)
-        if key not in known:
-            runs += 1
-            known[key] = job.run(job.grid(density), True, tolerance, progress)
-        return known[key]
 
     while runs < MOST_RUNS:
-        wide = finer / STEP if sized else finer
-        fine, loose = run(finer, rtol), run(wide, min(TIGHTER * rtol, 1e-2))
+        fine = job.run(job.grid(finer), True, rtol, progress)
+        # where the particles went is known then, and a wider grid can take it into use from the start
+        reached = _reached(fine)
+        wide = reached.coarser(STEP) if sized else reached
+        loose = job.run(wide, False, min(TIGHTER * rtol, 1e-2), progress, yardstick=True)
+        runs += 2
+        full = job.order(fine.grid)
+        order = full if math.isinf(full) else min(full, TRUSTED_ORDER)
         outcomes = {fine.status.outcome, loose.status.outcome} - {Outcome.COMPLETED}
         if outcomes == {Outcome.UNRESOLVED} and finer < 2.0:
             finer *= STEP  # too coarse to be run at all
@@ -99,7 +112,16 @@ def refined(job: Job, accuracy: float, progress: object) -> Result:
             continue
         if outcomes:
             break
-        error = _compared(fine, loose, partial(run, wide, rtol), order, accuracy, FLOOR * rtol, runs)
+        error = _compared(
+            job,
+            fine,
+            loose,
+            partial(job.run, wide, False, rtol, yardstick=True),
+            order,
+            accuracy,
+            FLOOR * rtol,
+            runs,
+        )
         if best is None or error.largest < best[0]:
             best = error.largest, replace(fine, estimate=Later(error))
         if error.largest <= accuracy or rtol <= 1e-12:
@@ -121,6 +143,7 @@ def refined(job: Job, accuracy: float, progress: object) -> Result:
 
 
 def _compared(
+    job: Job,
     fine: Result,
     loose: Result,
     tighten: Callable[[], Result],
@@ -130,19 +153,27 @@ def _compared(
     runs: int,
 ) -> ErrorEstimate:
     """Estimate from a run and one on a wider grid at a looser tolerance, which `tighten` repeats at the tight one."""
-    (one, top), other = _top(fine), Snapshot.of(loose)
+    (one, ends), other = _ends(fine, job), Snapshot.of(loose)
     if not math.isfinite(order):
-        pairs = (Comparison("time", one, other, TIME_OVER), top)
+        pairs = (Comparison("time", one, other, TIME_OVER), *ends)
         return ErrorEstimate(fine.times, pairs, None, floor, accuracy, runs)
     over = STEP**order - 1.0
 
     def apart() -> tuple[Comparison, ...]:
         middle = Snapshot.of(tighten())
-        return Comparison("size", one, middle, over), Comparison("time", middle, other, TIME_OVER), top
+        return Comparison("size", one, middle, over), Comparison("time", middle, other, TIME_OVER), *ends
 
     # the looser tolerance errs by more times than the wider grid, so the grid's ratio is safe for both
-    pairs = (Comparison("size and time", one, other, min(over, TIME_OVER)), top)
+    pairs = (Comparison("size and time", one, other, min(over, TIME_OVER)), *ends)
     return ErrorEstimate(fine.times, pairs, apart, floor, accuracy, runs)
+
+
+def _ends(result: Result, job: Job) -> tuple[Snapshot, tuple[Comparison, ...]]:
+    """The result, and its comparisons with what lies beyond the ends of its grid put back."""
+    one, top = _top(result)
+    if job.vessel.smallest != 0.0:
+        return one, (top,)
+    return one, (top, Comparison("bottom", one, Snapshot.with_bottom(result), 1.0))
 
 
 def _top(result: Result) -> tuple[Snapshot, Comparison]:

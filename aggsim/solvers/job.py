@@ -14,6 +14,7 @@ from aggsim.result import Balance, Contributions, Result, RunStatistics, Status
 from aggsim.schemes import BEYOND, Scheme
 from aggsim.sizes import SizeGrid, StartingDistribution
 from aggsim.solvers.base import Method
+from aggsim.solvers.growth import NEGATIVE_LIMIT
 from aggsim.solvers.ladder import Ladder
 from aggsim.solvers.progress import progress_for
 from aggsim.solvers.run import Run
@@ -36,8 +37,9 @@ class Job:
         return default_grid(self.scheme, self.vessel, self.starts, finer)
 
     def order(self, grid: SizeGrid) -> float:
-        """Order of convergence on a grid: that of the scheme, or 2 where a kernel or a start has kinks."""
-        sharp = any(law is not None and law.breaks for law in (*self.starts, *self.vessel.feeds))
+        """Order of convergence on a grid: that of the scheme, or 2 where a kernel or a start is not smooth on it."""
+        laws = [law for law in (*self.starts, *self.vessel.feeds) if law is not None]
+        sharp = any(law.breaks or (law.atoms and grid.monomer is None) for law in laws)
         smooth = not sharp and all(span.vessel.smooth(grid.volume) for span in self.vessel.spans)
         return (
             self.scheme.order
@@ -45,13 +47,20 @@ class Job:
             else min(self.scheme.order, 2.0)
         )
 
-    def run(self, grid: SizeGrid, automatic: bool, rtol: float, progress: Any = False) -> Result:
-        """Result on a grid, which is continued upward where `automatic`."""
+    def run(
+        self, grid: SizeGrid, automatic: bool, rtol: float, progress: Any = False, yardstick: bool = False
+    ) -> Result:
+        """Result on a grid, which is continued upward where `automatic`.
+
+        A `yardstick` for the error of another run takes the whole grid into use from the start, which is known to
+        be no longer than needed, and is not given up for its negative sections, which are part of that error.
+        """
         began = clock.perf_counter()
         starts = np.array([project_or_none(self.scheme, one, grid) for one in self.starts])
         shown = progress_for(progress)
-        ladder = Ladder(self.scheme, grid, automatic)
-        run = Run(self.vessel, self.scheme, self.method, ladder, starts, self.outputs, rtol, shown)
+        ladder = Ladder(self.scheme, grid, automatic, at_once=yardstick)
+        limit = math.inf if yardstick else NEGATIVE_LIMIT
+        run = Run(self.vessel, self.scheme, self.method, ladder, starts, self.outputs, rtol, shown, limit)
         try:
             status = run.execute()
         finally:

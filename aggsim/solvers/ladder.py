@@ -24,8 +24,12 @@ LARGEST_AUTOMATIC_GRID = 400  # sections
 class Ladder:
     """The grids of one run, each a lower part of the next."""
 
-    def __init__(self, scheme: Scheme, grid: SizeGrid, automatic: bool) -> None:
-        """Climb `grid` to its top and, where `automatic`, continue it beyond by its own rule."""
+    def __init__(self, scheme: Scheme, grid: SizeGrid, automatic: bool, at_once: bool = False) -> None:
+        """Climb `grid` to its top and, where `automatic`, continue it beyond by its own rule.
+
+        With `at_once` it is used whole from the start, where it is known to be no longer than needed.
+        """
+        self._at_once = at_once
         self._scheme = scheme
         self._whole = grid
         self._automatic = automatic
@@ -42,6 +46,8 @@ class Ladder:
 
     def first(self, number: FloatArray) -> SizeGrid:
         """Grid to begin with, for numbers on the whole grid."""
+        if self._at_once:
+            return self._whole
         x = self._whole.volume
         above = np.cumsum((number * x)[::-1])[::-1]
         used = int(np.flatnonzero(above > UNSEEN * above[0])[-1])

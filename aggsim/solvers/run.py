@@ -57,6 +57,7 @@ class Run:
     outputs: FloatArray
     rtol: float
     progress: Progress
+    negative_limit: float = NEGATIVE_LIMIT
     steps: int = 0
     restarts: int = -1  # the first start is no restart
     extensions: int = 0
@@ -244,7 +245,7 @@ class Run:
                 if status is not None:
                     return status
             negative = self._watch.negative_share(self._state)
-            if negative > NEGATIVE_LIMIT:
+            if negative > self.negative_limit:
                 return Status(Outcome.UNRESOLVED, self._time, _unresolved(negative))
             if longer is not None and self._time < stop:
                 stepper = self._climb(longer, start, stop)

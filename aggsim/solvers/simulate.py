@@ -122,7 +122,7 @@ def simulate(
         expect(chosen, SizeGrid, "grid", "SizeGrid.geometric(smallest=..., largest=...) or None")
         scheme.check(chosen)
         result = job.run(chosen, grid is None, rtol, progress)
-        result = replace(result, estimate=Later(lambda: estimated(job, result, grid, rtol)))
+        result = replace(result, estimate=Later(lambda: estimated(job, result, rtol)))
     status = result.status
     if not status.completed and raise_unfinished:
         kind = InterruptedRunError if status.outcome is Outcome.INTERRUPTED else SimulationError

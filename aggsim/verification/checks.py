@@ -2,12 +2,10 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator
 from dataclasses import dataclass
-from decimal import Decimal
 from typing import Any, NamedTuple
-
-import numpy as np
 
 
 @dataclass(frozen=True)
@@ -43,7 +41,7 @@ class Case:
     ) -> Check:
         """Compare two figures; the tolerance is `relative` plus `absolute` in the unit of the figure."""
         one, other = float(expected), float(computed)
-        tolerance = relative + absolute / (abs(one) if one else 1.0)
+        tolerance = float(relative + absolute / (abs(one) if one else 1.0))
         return Check(self, quantity, at, one, other, tolerance, least)
 
     def each(
@@ -80,11 +78,12 @@ class Check(NamedTuple):
 
     @property
     def strain(self) -> float:
-        """Error over tolerance; infinite where it is not a number."""
+        """Error over tolerance, or a lower limit over the figure: 1 where the check is only just passed."""
+        if self.least:
+            return self.expected / self.computed if self.computed > 0.0 else math.inf
         if self.error == 0.0:
             return 0.0
-        ratio = self.error / self.tolerance if self.tolerance else np.inf
-        return ratio if ratio == ratio else np.inf
+        return self.error / self.tolerance if self.tolerance and self.error == self.error else math.inf
 
     def __str__(self) -> str:
         limit = "at least " if self.least else ""
@@ -92,8 +91,3 @@ class Check(NamedTuple):
             f"{self.case.name}: {self.quantity}, {self.at}: expected {limit}{self.expected:.12g}, "
             f"computed {self.computed:.12g}, error {self.error:.2g}, tolerance {self.tolerance:.2g}"
         )
-
-
-def last_digit(printed: str) -> float:
-    """One unit of the last digit of a printed figure, such as 1e-3 of "0.250"."""
-    return float(10.0 ** int(Decimal(printed).as_tuple().exponent))

@@ -17,8 +17,8 @@ from aggsim.kernels import Kernel, additive, constant, multiplicative
 from aggsim.sizes import Exponential, Monodisperse, StartingDistribution
 from aggsim.vessels import Batch
 
-MONO = Monodisperse(volume=1.0, number=1.0)
-EXPONENTIAL = Exponential(mean_volume=1.0, number=1.0)
+MONO: StartingDistribution = Monodisperse(volume=1.0, number=1.0)
+EXPONENTIAL: StartingDistribution = Exponential(mean_volume=1.0, number=1.0)
 
 # ---- aggregation
 

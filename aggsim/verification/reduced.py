@@ -11,8 +11,8 @@ from aggsim.result import Result
 from aggsim.schemes import Monomer
 from aggsim.sizes import SizeGrid
 from aggsim.solvers import simulate
-from aggsim.vessels import Batch
 from aggsim.verification.closed import MONO
+from aggsim.vessels import Batch
 
 
 def brownian(exponent: float = 1.0 / 3.0) -> Kernel:

@@ -14,14 +14,14 @@ from scipy.integrate import quad
 from scipy.optimize import brentq
 
 from aggsim._checks import FloatArray
+from aggsim.kernels import constant
 from aggsim.result import FIGURES, Snapshot
 from aggsim.sizes import SizeGrid, StartingDistribution, means
-from aggsim.vessels import Batch, StirredTank, Vessel
-from aggsim.kernels import constant
 from aggsim.verification import closed
 from aggsim.verification.closed import Breaking, ClosedSolution, Reversible
 from aggsim.verification.published.unsolved import Unsolved
 from aggsim.verification.reduced import every_size
+from aggsim.vessels import Batch, StirredTank, Vessel
 
 Figures = dict[str, FloatArray]
 AGREED = 1e-9  # between the moments of a distribution on the fine grid and the closed ones

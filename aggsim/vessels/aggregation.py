@@ -61,12 +61,12 @@ class Aggregation(Process):
         Over a step d in ln w the sum K(v, w e**d) + K(v, w e**-d) - 2 K(v, v) grows with d**2 where the kernel is
         smooth and with d where it has a kink.
         """
-        v = volume[:: max(1, volume.size // _LOOKED_AT)]
+        v = volume[:: max(1, volume.size // _LOOKED_AT)][:, None]
+        steps = _STEP * np.array([-2.0, -1.0, 0.0, 1.0, 2.0])
+        far_down, down, middle, up, far_up = np.asarray(self.kernel(v, v * np.exp(steps))).T
 
-        def bend(step: float) -> FloatArray:
-            middle = np.asarray(self.kernel(v, v))
-            up, down = (np.asarray(self.kernel(v, v * np.exp(sign * step))) for sign in (1.0, -1.0))
-            return np.asarray(np.abs(up + down - 2.0 * middle) / (up + down + middle))
+        def bend(below: FloatArray, above: FloatArray) -> FloatArray:
+            return np.asarray(np.abs(below + above - 2.0 * middle) / (below + above + middle))
 
-        narrow, wide = bend(_STEP), bend(2.0 * _STEP)
+        narrow, wide = bend(down, up), bend(far_down, far_up)
         return not bool(((wide > _SEEN) & (wide < 3.0 * narrow)).any())

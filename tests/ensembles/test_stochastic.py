@@ -7,12 +7,12 @@ from typing import Any
 
 import numpy as np
 import pytest
-from closed_breakage import Reversible, uniform
 from scipy.linalg import expm
 
 import aggsim as ag
 from aggsim.ensembles import EnsembleResult, monte_carlo
 from aggsim.errors import AccuracyWarning, InputError, SimulationError, TimesError
+from aggsim.verification.closed import Reversible, uniform
 
 Array = np.ndarray
 

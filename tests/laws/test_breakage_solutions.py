@@ -6,13 +6,13 @@ what is left is the error in time and the sizes below the grid, half a smallest 
 
 from __future__ import annotations
 
-import closed_breakage as closed
 import numpy as np
 import pytest
-from closed_breakage import Breaking, Reversible
 from scipy.integrate import quad
 
 import aggsim as ag
+from aggsim.verification import closed
+from aggsim.verification.closed import Breaking, Reversible
 
 Array = np.ndarray
 

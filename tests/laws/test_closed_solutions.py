@@ -11,13 +11,13 @@ from __future__ import annotations
 
 from collections.abc import Callable
 
-import closed_solutions as closed
 import numpy as np
 import pytest
-from closed_solutions import ClosedSolution
 from scipy.interpolate import make_interp_spline
 
 import aggsim as ag
+from aggsim.verification import closed
+from aggsim.verification.closed import ClosedSolution
 
 Array = np.ndarray
 

@@ -7,7 +7,6 @@ from __future__ import annotations
 
 from functools import lru_cache
 
-import closed_solutions as closed
 import numpy as np
 import pytest
 from reference_runs import MONODISPERSE, brownian, every_size, grid_of, settling, shear
@@ -16,6 +15,7 @@ from scipy import special
 import aggsim as ag
 from aggsim.schemes import CellAverage, FiniteVolume
 from aggsim.sizes import means
+from aggsim.verification import closed
 
 Array = np.ndarray
 

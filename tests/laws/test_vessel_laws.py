@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from typing import Any
 
-import closed_breakage as closed
 import numpy as np
 import pytest
 from hypothesis import given
@@ -12,6 +11,7 @@ from hypothesis import strategies as st
 from reference_runs import brownian, shear
 
 import aggsim as ag
+from aggsim.verification import closed
 
 Array = np.ndarray
 

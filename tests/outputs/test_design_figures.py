@@ -85,7 +85,10 @@ def test_exponents_stand_beside_the_curve(curve):
 
 
 def test_states_that_are_not_stable_are_marked(curve):
-    states = [replace(state, jacobian=state.jacobian * (-1.0 if k == 1 else 1.0)) for k, state in enumerate(curve.states)]
+    states = [
+        replace(state, jacobian=state.jacobian * (-1.0 if k == 1 else 1.0))
+        for k, state in enumerate(curve.states)
+    ]
     ax = figures.steady_size(SteadyCurve(curve.values, states))
     assert labels(ax)[-1] == "not stable"
     assert ax.lines[-1].get_xdata() == [curve.values[1]]

@@ -8,6 +8,9 @@ import numpy as np
 import pytest
 
 import aggsim as ag
+from aggsim.verification.published.breakage import PLUG_FLOW
+from aggsim.verification.published.physics import DECAY
+from aggsim.verification.published.unsolved import BROWNIAN_MOMENTS
 
 WATER = ag.Medium.water(temperature=293.15)
 
@@ -17,23 +20,16 @@ def compact(diameter: float) -> ag.Compact:
 
 
 def test_half_life_of_rapid_coagulation() -> None:
-    """t = 3 mu / (4 kT N0) = 18.5602 s for 1e16 1/m3 at 20 C: M. von Smoluchowski (1917), doi:10.1515/zpch-1918-9209.
-
-    The formula takes the kernel of equal spheres for every pair. In a run the kernel of unequal ones adds a
-    little as sizes spread: 1 % by the first half-life (Brownian kernel, discrete solution: M0 = 0.49738 where
-    the constant kernel has 0.5).
-    """
-    diameter = 400e-9
+    """The formula takes the kernel of equal spheres for every pair. In a run the kernel of unequal ones adds a
+    little as sizes spread: 1 % by the first half-life."""
+    diameter, half_life = 400e-9, DECAY[293.15, 1.00160e-3][1]
     start = ag.Monodisperse(diameter=diameter, number=1e16)
-    kernel = ag.kernels.brownian(compact(diameter), WATER)
-    equal = float(kernel(start.atoms[0][0], start.atoms[0][0]))
     times = np.linspace(0.0, 40.0, 81)
-    same = ag.simulate(ag.Batch(ag.kernels.constant(equal)), start, times)
-    assert same.number_half_life() == pytest.approx(18.5602, rel=1e-4)
-    real = ag.simulate(ag.Batch(kernel), start, times)
-    assert 0.98 < real.number_half_life() / 18.5602 < 1.0
-    at_half = np.interp(18.5602, times, real.total_number()) / 1e16
-    assert at_half == pytest.approx(0.4973839383, rel=2e-4)  # interpolated between outputs
+    result = ag.simulate(ag.Batch(ag.kernels.brownian(compact(diameter), WATER)), start, times)
+    assert 0.98 < result.number_half_life() / half_life < 1.0
+    at_half = np.interp(half_life, times, result.total_number()) / 1e16
+    (expected,) = BROWNIAN_MOMENTS[BROWNIAN_MOMENTS[:, 0] == 2.0, 1]
+    assert at_half == pytest.approx(expected, rel=2e-4)  # interpolated between outputs
 
 
 @pytest.mark.parametrize("diameter", [10e-9, 1e-6, 10e-6])
@@ -45,14 +41,14 @@ def test_rapid_rate_does_not_depend_on_the_size_of_equal_spheres(diameter: float
 
 
 def test_decay_under_shear() -> None:
-    """N/N0 = exp(-4 alpha G phi t / pi) = 0.68251426 for equal spheres at constant volume.
+    """N/N0 = exp(-4 alpha G phi t / pi) for equal spheres at constant volume.
 
     Follows from Smoluchowski's (1917) kernel (4/3) G d**3 with phi = pi d**3 N / 6. It holds while sizes are
     equal; as they spread decay is slower, since ((d1 + d2) / 2)**3 is below the mean of d1**3 and d2**3.
     """
     efficiency, gradient, fraction, time = 0.1, 50.0, 5e-5, 1200.0
     law = math.exp(-4 * efficiency * gradient * fraction * time / math.pi)
-    assert law == pytest.approx(0.68251426, rel=1e-7)
+    assert law == pytest.approx(PLUG_FLOW, rel=1e-7)
     kernel = efficiency * ag.kernels.shear(compact(2e-6), ag.Flow(shear_rate=gradient))
     start = ag.Monodisperse(diameter=2e-6, volume_fraction=fraction)
     result = ag.simulate(ag.Batch(kernel), start, [0.0, 1e-3 * time, time], rtol=1e-9)

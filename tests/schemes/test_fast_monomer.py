@@ -6,7 +6,6 @@ from functools import lru_cache
 
 import numpy as np
 import pytest
-from closed_solutions import CONSTANT_MONO, SUM_MONO, ClosedSolution
 from hypothesis import given
 from hypothesis import strategies as st
 from scheme_cases import discrete_equation, jacobian_of, rates_of
@@ -17,6 +16,7 @@ from aggsim.errors import GridError
 from aggsim.schemes.fast_monomer import FactoredOperator
 from aggsim.schemes.low_rank import factored
 from aggsim.schemes.monomer import MonomerOperator
+from aggsim.verification.closed import CONSTANT_MONO, SUM_MONO, ClosedSolution
 
 Array = np.ndarray
 

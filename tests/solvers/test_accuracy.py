@@ -1,11 +1,11 @@
 from __future__ import annotations
 
-import closed_solutions as closed
 import numpy as np
 import pytest
 
 import aggsim as ag
 from aggsim.errors import AccuracyWarning, InputError, SimulationError
+from aggsim.verification import closed
 
 CONSTANT = ag.Batch(ag.kernels.constant(1.0))
 EXPONENTIAL = ag.Exponential(mean_volume=1.0, number=1.0)

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from typing import Any
 
-import closed_breakage as closed
 import numpy as np
 import pytest
 
@@ -12,6 +11,7 @@ import aggsim as ag
 from aggsim.errors import InputError
 from aggsim.solvers.ladder import Ladder
 from aggsim.solvers.newton import Search, in_turn
+from aggsim.verification import closed
 
 Array = np.ndarray
 

@@ -5,13 +5,13 @@ from __future__ import annotations
 import warnings
 from typing import Any
 
-import closed_breakage as closed
 import numpy as np
 import pytest
 
 import aggsim as ag
 from aggsim.errors import AccuracyWarning, InputError, SimulationError
 from aggsim.result import SteadyState
+from aggsim.verification import closed
 
 Array = np.ndarray
 

@@ -16,6 +16,7 @@ from aggsim._checks import FloatArray
 from aggsim.inputs import Medium
 from aggsim.kernels import constant
 from aggsim.result import Result
+from aggsim.schemes import FixedPivot
 from aggsim.sizes import Monodisperse, SizeGrid
 from aggsim.solvers import simulate
 from aggsim.verification import closed
@@ -177,7 +178,10 @@ TABLES = [
 def run(table: Printed) -> Result:
     """Six moments, 16 sections per doubling, rtol = 1e-10."""
     problem = table.problem
-    return simulate(Batch(problem.kernel), problem.start, table.times, grid=table.grid, rtol=1e-10)
+    scheme = FixedPivot(moments=6)
+    return simulate(
+        Batch(problem.kernel), problem.start, table.times, grid=table.grid, scheme=scheme, rtol=1e-10
+    )
 
 
 def densities(result: Result, i: int, points: FloatArray) -> FloatArray:

@@ -12,8 +12,9 @@ import numpy as np
 from aggsim._checks import FloatArray
 from aggsim.breakage import Breakage, fragments, rates
 from aggsim.kernels import additive, constant, from_function
+from aggsim.result import SteadyState
 from aggsim.schemes import FixedPivot, Monomer, Scheme, Sectional
-from aggsim.sizes import Exponential, Monodisperse, SizeGrid
+from aggsim.sizes import Exponential, Monodisperse, SizeGrid, StartingDistribution
 from aggsim.solvers import simulate, steady_state
 from aggsim.verification import closed
 from aggsim.verification.checks import Case, Check
@@ -23,6 +24,7 @@ from aggsim.vessels import Batch, StirredTank, Tank, Train
 
 Checks = Iterator[Check]
 
+SIXTH = FixedPivot(moments=6)
 BREAKAGE, TANK = "Breakage and equilibrium", "Stirred tank and tanks in series"
 
 # ---- breakage alone
@@ -87,7 +89,7 @@ def breakage_alone() -> Checks:
         printed = {t: [float(x) for x in TABLE[problem, t].split()] for t in problem.times}
         for place, v in enumerate(POINTS[problem.start]):
             grid, k = grid_for(problem, v)
-            result = simulate(vessel, problem.start, problem.times, grid=grid, rtol=1e-8)
+            result = simulate(vessel, problem.start, problem.times, grid=grid, scheme=SIXTH, rtol=1e-8)
             for t, number in zip(problem.times, result.number, strict=True):
                 if problem.start is closed.MONO or falls(problem, v, t) <= 3.0:
                     found = number[k] / grid.width[k]
@@ -95,7 +97,7 @@ def breakage_alone() -> Checks:
                     yield case.check("density n(v)", at, printed[t][place], found, relative=2e-5)
         largest = 32.0 if problem.start is closed.EXPONENTIAL else 1.0
         grid = SizeGrid.geometric(smallest=2.0**-36 * largest, largest=largest, per_doubling=6)
-        result = simulate(vessel, problem.start, problem.times, grid=grid, rtol=1e-9)
+        result = simulate(vessel, problem.start, problem.times, grid=grid, scheme=SIXTH, rtol=1e-9)
         for k, place in ((0, -2), (2, -1)):
             for t, found in zip(problem.times, result.moment(k), strict=True):
                 yield case.check(f"M{k}", f"t = {t:g}", printed[t][place], found, relative=2e-6)
@@ -126,14 +128,12 @@ def shear_with_breakage(coefficient: float = 1.0) -> Batch:
     return Batch(kernel, breakage=Breakage(rate=rate, fragments=fragments.equal_binary()))
 
 
-def spreads(scheme: Scheme, per_doubling: int, coefficient: float = 1.0) -> tuple[float, float]:
-    """Geometric standard deviations of the diameter at the steady state, by number and by volume."""
+def equilibrium(scheme: Scheme, per_doubling: int, coefficient: float = 1.0) -> SteadyState:
+    """Steady state of shear with breakage."""
     middle = coefficient**-3.0  # collisions per particle are as the volume fraction, so S(v) must be as well
     grid = SizeGrid.geometric(smallest=1e-8 * middle, largest=1e4 * middle, per_doubling=per_doubling)
     start = Exponential(mean_volume=middle, number=1.0 / middle)
-    state = steady_state(shear_with_breakage(coefficient), start=start, grid=grid, scheme=scheme)
-    by_number, by_volume = (float(state.geometric_standard_deviation(r)) for r in (0, 3))
-    return by_number, by_volume
+    return steady_state(shear_with_breakage(coefficient), start=start, grid=grid, scheme=scheme)
 
 
 def equilibria() -> Checks:
@@ -143,10 +143,10 @@ def equilibria() -> Checks:
         basis = "rtol = 1e-9, sizes below the grid included: every scheme keeps the number"
         case = Case(BREAKAGE, f"constant kernel 1 and uniform breakage {s:g} v", closed.REVERSIBLE, basis)
         grid = SizeGrid.geometric(smallest=1e-10, largest=100.0 / problem.last, per_doubling=3)
-        result = simulate(problem.vessel, closed.EXPONENTIAL, TIMES, grid=grid, rtol=1e-9)
+        result = simulate(problem.vessel, closed.EXPONENTIAL, TIMES, grid=grid, scheme=SIXTH, rtol=1e-9)
         printed = [float(x) for x in text.split()]
         yield from case.each("M0", "t = {:g}", TIMES, printed, result.total_number(), relative=1e-9)
-        state = steady_state(problem.vessel, start=closed.EXPONENTIAL, grid=grid)
+        state = steady_state(problem.vessel, start=closed.EXPONENTIAL, grid=grid, scheme=SIXTH)
         last = state.total_number()
         # below the grid: 1e-10, half a smallest pivot over the mean volume
         yield case.check("M0", "steady state", LAST[s], last, relative=2e-10)
@@ -159,8 +159,11 @@ def equilibria() -> Checks:
         "printed digits (0.01)",
     )
     for scheme in (Sectional(), FixedPivot(moments=2)):
-        for name, given, found in zip(("number", "volume"), SPREADS, spreads(scheme, 1), strict=True):
+        state = equilibrium(scheme, 1)
+        for r, name, given in zip((0, 3), ("number", "volume"), SPREADS, strict=True):
+            found = state.geometric_standard_deviation(r)
             yield case.check(f"geometric spread by {name}", f"{scheme!r}", given, found, absolute=0.01)
+        yield closure(f"shear and breakage, {scheme!r}", state)
 
 
 # ---- stirred tank
@@ -188,7 +191,7 @@ SINGLES = Monodisperse(diameter=2e-6, volume_fraction=5e-5)
 LEVENSPIEL = "O. Levenspiel, Chemical Reaction Engineering, 3rd ed. (1999)"
 
 
-def tank(tau: float, feed: Monodisperse | Exponential) -> StirredTank:
+def tank(tau: float, feed: StartingDistribution) -> StirredTank:
     """Stirred tank with the constant kernel 1."""
     return StirredTank(constant(1.0), residence_time=tau, feed=feed)
 
@@ -197,7 +200,7 @@ def density_in_tank(tau: float, volume: float) -> float:
     """n(v) at the steady state for an exponential feed, at 6 sections per doubling through v."""
     largest = volume * 2.0 ** np.ceil(np.log2(TOP[tau] / volume))
     grid = SizeGrid.geometric(smallest=volume * 2.0**-20, largest=largest, per_doubling=6)
-    number = steady_state(tank(tau, closed.EXPONENTIAL), grid=grid).number
+    number = steady_state(tank(tau, closed.EXPONENTIAL), grid=grid, scheme=SIXTH).number
     at = int(np.argmin(np.abs(grid.volume - volume)))
     return float(number[at] / grid.width[at])
 

@@ -126,7 +126,7 @@ def energies() -> Checks:
     case = Case(
         ENERGY,
         "Debye length",
-        "formula of Debye and Hückel (1923) with the permittivity of IAPWS R8-97",
+        "P. Debye, E. Hueckel (1923) with the permittivity of IAPWS R8-97",
         "five or six digits given; 0.035 % where water takes its permittivity from IAPWS SR6-08(2011)",
     )
     for permittivity, nanometres in DEBYE_OF_ONE_MOLAR.items():

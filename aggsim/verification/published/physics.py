@@ -84,8 +84,8 @@ def water_properties() -> Checks:
     case = Case(
         WATER,
         "liquid water at atmospheric pressure",
-        "IAPWS-95 (W. Wagner, A. Pruß 2002, doi:10.1063/1.1461829), IAPWS R12-08, IAPWS R8-97",
-        "printed digits and 0.0013 MPa of pressure; permittivity: two published fits that differ by up to 0.15 %",
+        "IAPWS-95 (W. Wagner, A. Pruss 2002, doi:10.1063/1.1461829), IAPWS R12-08, IAPWS R8-97",
+        "printed digits, 0.0013 MPa; permittivity: two published fits that differ by up to 0.15 %",
     )
     media = {celsius: Medium.water(constants.zero_Celsius + celsius) for celsius in LIQUID}
     for celsius, (density, viscosity, permittivity, kinematic) in LIQUID.items():
@@ -165,10 +165,10 @@ def collision_rates() -> Checks:
     for (kelvin, viscosity), (decay, half_life) in DECAY.items():
         medium, at = Medium(temperature=kelvin, viscosity=viscosity, density=998.0), f"{kelvin:g} K"
         rate = 0.5 * equal_pair(medium)
-        yield case.check("decay constant 4 kT/(3 mu) [m3/s]", at, decay, rate, relative=1e-5)
+        yield case.check("4 kT/(3 mu), decay [m3/s]", at, decay, rate, relative=1e-5)
         yield case.check("half-life of 1e16 1/m3 [s]", at, half_life, 1.0 / (rate * 1e16), relative=1e-5)
     per_mole = equal_pair(Medium.water(298.15)) * constants.N_A * 1000.0
-    yield case.check("8 RT/(3 mu) in water [L/(mol s)]", "25 C", PER_MOLE, per_mole, relative=1e-4)
+    yield case.check("8 RT/(3 mu) [L/(mol s)]", "water, 25 C", PER_MOLE, per_mole, relative=1e-4)
 
     case = Case(
         RATES,
@@ -189,12 +189,12 @@ def collision_rates() -> Checks:
     for (diameter, shear_rate), printed in SHEAR_OVER_BROWNIAN.items():
         v, at = volume(diameter), f"{1e6 * diameter:g} um, {shear_rate:g} 1/s"
         ratio = shear(QUARTZ, Flow(shear_rate=shear_rate))(v, v) / brownian(QUARTZ, ROOM)(v, v)
-        yield case.check("shear over Brownian motion, 20 C", at, printed, ratio, relative=1e-6)
+        yield case.check("shear / Brownian motion, 20 C", at, printed, ratio, relative=1e-6)
     for shear_rate, micrometres in CROSSOVER.items():
         v, at = volume(1e-6 * micrometres), f"{micrometres:g} um, {shear_rate:g} 1/s"
         ratio = shear(QUARTZ, Flow(shear_rate=shear_rate))(v, v) / brownian(QUARTZ, ROOM)(v, v)
         # three times the last of six digits
-        yield case.check("the same at the crossover diameter", at, 1.0, ratio, relative=1e-5)
+        yield case.check("ratio at the crossover diameter", at, 1.0, ratio, relative=1e-5)
 
     case = Case(
         RATES,
@@ -254,8 +254,8 @@ def settling_speeds() -> Checks:
         d, at = 1e-6 * micrometres, f"{micrometres:g} um"
         slow = settling_velocity(QUARTZ, ROOM, volume(d))
         speed = float(settling_velocity(QUARTZ, ROOM, volume(d), drag=SchillerNaumann()))
-        yield case.check("speed by Stokes [m/s]", at, stokes, slow, relative=1e-6)
-        yield case.check("speed by Schiller and Naumann [m/s]", at, beyond, speed, relative=1e-6)
+        yield case.check("speed, Stokes [m/s]", at, stokes, slow, relative=1e-6)
+        yield case.check("speed, Schiller-Naumann [m/s]", at, beyond, speed, relative=1e-6)
         yield case.check("Reynolds number", at, reynolds, speed * d / ROOM.kinematic_viscosity, relative=5e-5)
     found = [SchillerNaumann().coefficient(reynolds) for reynolds in DRAG]
     yield from case.each("drag coefficient", "Re = {:g}", DRAG, DRAG.values(), found, relative=1.1e-6)
@@ -278,7 +278,7 @@ def settling_speeds() -> Checks:
         found_excess = flocs.effective_density(solid, ROOM.density) - ROOM.density
         yield case.check("excess density [kg/m3]", at, excess, found_excess, relative=1e-6)
         yield case.check(
-            "speed by Stokes [m/s]", at, printed, settling_velocity(flocs, ROOM, solid), relative=1e-6
+            "speed, Stokes [m/s]", at, printed, settling_velocity(flocs, ROOM, solid), relative=1e-6
         )
 
 
@@ -304,7 +304,6 @@ PLANTS = (
 POWER = 1632.4  # mu V G^2 for 50 1/s in 500 m3 at 10 C [W]
 GRADIENTS = ((COLD, 39.1345), (ROOM, 44.6856))  # of 1000 W in 500 m3 [1/s]
 SCALES = (2.508497e-3, 141.66e-6, 2.5040)  # G = 50 1/s at 20 C: W/kg, m (Kolmogorov length), W/m3
-LEFT_IN_BATCH, LEFT_IN_TANKS = 0.68251426, 0.69432312  # alpha 0.1, G 50 1/s, phi 5e-5, 1200 s, four tanks
 _POUND_PER_SQUARE_FOOT_SECOND = constants.lbf / constants.foot**2  # W/m3
 
 

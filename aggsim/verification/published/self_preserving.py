@@ -33,8 +33,10 @@ from aggsim.vessels import Batch
 
 GROUP = "Aggregation: self-preserving distribution"
 SOURCE = (
-    "S. K. Friedlander, C. S. Wang, J. Colloid Interface Sci. 22 (1966) 126, doi:10.1016/0021-9797(66)90073-7"
+    "S. K. Friedlander, C. S. Wang, J. Colloid Interface Sci. 22 (1966) 126, doi:10.1016/0021-9797(66)90073-7 "
+    "(equation); direct solution by Chebyshev collocation"
 )
+
 
 SPHERES = 1.0 / 3.0
 FRACTAL = 1.0 / 2.1
