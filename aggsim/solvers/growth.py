@@ -6,6 +6,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
 
 from aggsim._checks import FloatArray
 from aggsim.sizes import SizeGrid
@@ -63,7 +64,11 @@ class GrowthWatch:
         shares = np.array(volumes)
         self._weights = (shares[:, None] * weights[:, None, :]).reshape(3, -1)
         self._pivots = (shares[:, None] * x / self._volume).ravel()
-        self._sections = np.flatnonzero(np.arange(shares.size * weights.shape[1]) % weights.shape[1] < x.size)
+        width = weights.shape[1]
+        # a slice is quicker than a list of places, and one tank is the usual case
+        self._sections: slice | NDArray[np.intp] = slice(0, x.size)
+        if shares.size > 1:
+            self._sections = np.flatnonzero(np.arange(shares.size * width) % width < x.size)
         self._top = float(x[-1])
 
     def look(self, state: FloatArray) -> tuple[float, float, bool]:
