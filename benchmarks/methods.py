@@ -1,10 +1,13 @@
-"""LSODA, BDF and Radau on a smooth, a steep and a nearly gelling case: cost, and error against rtol = 1e-10.
+"""LSODA, BDF, Radau and, where installed, CVODE on three cases: cost, and error against rtol = 1e-10.
+
+The cases: smooth, steep, and nearly gelling.
 
 Where LSODA reports no Jacobians it stayed with its Adams methods: the case is not stiff for it.
 """
 
 from __future__ import annotations
 
+import contextlib
 import warnings
 from typing import Any
 
@@ -13,7 +16,9 @@ from _common import machine, mineral, one_thread, seconds, table
 import aggsim as ag
 from aggsim.errors import AccuracyWarning
 
-METHODS = (ag.methods.LSODA(), ag.methods.BDF(), ag.methods.Radau())
+METHODS = [ag.methods.LSODA(), ag.methods.BDF(), ag.methods.Radau()]
+with contextlib.suppress(ImportError):
+    METHODS.append(ag.methods.CVODE())
 RTOL = 1e-6
 
 
