@@ -96,9 +96,11 @@ class Comparison:
     over: float
 
     def error(self, first: FloatArray, second: FloatArray) -> FloatArray:
-        """Relative error of a reading of both runs."""
-        difference: FloatArray = np.abs(first - second) / np.abs(first) / self.over
-        return difference
+        """Relative error of a reading of both runs; none where there is nothing yet, as in a tank of clear liquid."""
+        size = np.nan_to_num(np.abs(first))
+        missed = np.nan_to_num(np.abs(first - second))
+        relative: FloatArray = np.divide(missed, size, out=np.zeros_like(size), where=size > 0.0)
+        return relative / self.over
 
 
 @dataclass(frozen=True, eq=False)

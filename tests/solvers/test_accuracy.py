@@ -123,3 +123,11 @@ def test_trains_carry_an_estimate_of_what_leaves() -> None:
     assert 0.0 < result.error.largest < 1e-2
     with pytest.raises(SimulationError, match="one tank of several"):
         _ = result.tanks[0].error
+
+
+def test_outputs_without_particles_have_no_error() -> None:
+    tank = ag.StirredTank(ag.kernels.constant(1.0), residence_time=5.0, feed=EXPONENTIAL)
+    error = ag.simulate(tank, None, [0.0, 10.0]).error
+    assert error["number"][0] == error["d50"][0] == error.floor
+    assert 0.0 < error.largest < 1e-3
+    assert "d50" in repr(error)
