@@ -65,10 +65,13 @@ class Job:
             status = run.execute()
         finally:
             shown.close()
-        return _result(run, status, self.scheme, self.method, rtol, clock.perf_counter() - began)
+        seconds = clock.perf_counter() - began
+        return _result(run, status, self.scheme, self.method, rtol, seconds, yardstick)
 
 
-def _result(run: Run, status: Status, scheme: Scheme, method: Method, rtol: float, seconds: float) -> Result:
+def _result(
+    run: Run, status: Status, scheme: Scheme, method: Method, rtol: float, seconds: float, yardstick: bool
+) -> Result:
     grid, times, states = run.grid, run.times(), run.states()
     shares = np.array(run.vessel.volumes)
     stats = RunStatistics(
@@ -83,7 +86,7 @@ def _result(run: Run, status: Status, scheme: Scheme, method: Method, rtol: floa
 
     def record(tank: int, balance: Balance, tanks: tuple[Result, ...] = ()) -> Result:
         number = np.ascontiguousarray(states[:, tank, : grid.sections])
-        contributions = Contributions(run.collisions(tank))
+        contributions = Contributions({} if yardstick else run.collisions(states, tank))
         return Result(times, grid, number, balance, contributions, status, stats, settings, tanks)
 
     def account(weights: FloatArray, streams: list[Stream]) -> Balance:

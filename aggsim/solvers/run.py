@@ -134,9 +134,9 @@ class Run:
         tanks = self._shares.size
         return np.array([_padded(row.state, row.grid, self.grid, tanks) for row in self._rows])
 
-    def collisions(self, tank: int) -> dict[str, tuple[FloatArray, FloatArray]]:
+    def collisions(self, states: FloatArray, tank: int) -> dict[str, tuple[FloatArray, FloatArray]]:
         """Collision events [1/(m3 s)] and volume flux [1/s] of each named part in a tank, (n_times,) each."""
-        number, times = self.states()[:, tank], self.times()
+        number, times = states[:, tank], self.times()
         span_of = np.array([row.span for row in self._rows])
         out: dict[str, tuple[FloatArray, FloatArray]] = {}
         for k, (grid, terms) in enumerate(self._terms):
