@@ -97,6 +97,10 @@ class Scheme(ABC):
         """Grid for a starting distribution, with modest room to grow and `finer` times the usual sections."""
         return starting_grid(start, per_doubling=8, finer=finer)
 
+    def coarser(self, grid: SizeGrid, factor: float) -> SizeGrid:
+        """A grid for the scheme with about `factor` times fewer sections, to judge the error on `grid` by."""
+        return grid.coarser(factor)
+
     def project(self, start: StartingDistribution, grid: SizeGrid) -> FloatArray:
         """Numbers (n_sections,) [1/m3] that stand for `start`."""
         return project(start, grid, moments=2)

@@ -49,6 +49,16 @@ class Sectional(Scheme):
     def default_grid(self, start: StartingDistribution, finer: float = 1.0) -> SizeGrid:
         return starting_grid(start, per_doubling=8, geometric=True, finer=finer, whole=True)
 
+    def coarser(self, grid: SizeGrid, factor: float) -> SizeGrid:
+        density = _sections_per_doubling(grid)
+        whole = max(1, math.floor(density / factor + 1e-9))
+        if whole == density:
+            raise GridError(
+                f"grid={grid!r} has one section per doubling, and Sectional() no coarser grid to judge its error by. "
+                "Try: more sections per doubling."
+            )
+        return grid.coarser(density / whole)
+
     def prepare(self, grid: SizeGrid) -> SegmentScheme:
         self.check(grid)
         births = _births(grid.sections, _sections_per_doubling(grid))

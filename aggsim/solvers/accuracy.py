@@ -21,10 +21,8 @@ from aggsim.solvers.job import Job
 
 COARSE = 2.0  # ratio of spacings between a result and the one coarse run of a quick estimate
 LOOSE = 30.0  # ratio of their tolerances
-EMPTY, ABOVE = (
-    1e-14,
-    4.0,
-)  # sections with less than this share of the fullest are empty; doublings kept above them
+EMPTY = 1e-14  # share of the fullest section below which one is empty
+ABOVE = 4.0  # doublings that are kept above the last one that is not
 OVER = 16.0  # ratio of their errors, less 1, on the safe side of sixth order (63); 3 of second order
 
 STEP = math.sqrt(2.0)  # ratio of spacings between runs of a refinement
@@ -49,14 +47,14 @@ def estimated(job: Job, result: Result, rtol: float) -> ErrorEstimate:
     sized = math.isfinite(job.scheme.order)
     # where the particles went is known: the coarse run takes these sizes into use from the start
     reached = _reached(result)
-    coarse_grid = reached.coarser(COARSE) if sized else reached
+    coarse_grid = job.scheme.coarser(reached, COARSE) if sized else reached
     coarse = job.run(coarse_grid, False, min(LOOSE * rtol, 1e-2), yardstick=True)
     if not coarse.status.completed:
         raise SimulationError(
             f"the coarse run of the error estimate ended early: {coarse.status} Try: a finer grid, or accuracy=1e-3.",
             coarse,
         )
-    over = min(OVER, COARSE ** job.order(result.grid) - 1.0)
+    over = min(OVER, _apart(reached, coarse_grid, COARSE) ** job.order(result.grid) - 1.0)
     (one, ends), other = _ends(result, job), Snapshot.of(coarse)
     if not sized:
         return ErrorEstimate(
@@ -71,11 +69,20 @@ def estimated(job: Job, result: Result, rtol: float) -> ErrorEstimate:
     return ErrorEstimate(result.times, comparisons, apart, FLOOR * rtol, runs=2)
 
 
+def _apart(grid: SizeGrid, coarse: SizeGrid, meant: float) -> float:
+    """Ratio of the spacings of two grids; the one that was meant where they have none of their own."""
+    if grid.ratio is None or coarse.ratio is None:
+        return meant
+    return math.log(coarse.ratio) / math.log(grid.ratio)
+
+
 def _reached(result: Result) -> SizeGrid:
     """The grid of a result up to some way above its largest particles."""
     grid = result.grid
     tanks = [tank.number for tank in result.tanks] or [result.number]
     held = np.abs(np.concatenate(tanks)).max(axis=0) * grid.volume
+    if not held.any():
+        return grid
     used = int(np.flatnonzero(held > EMPTY * held.max())[-1])
     count = int(np.searchsorted(grid.volume, 2.0**ABOVE * grid.volume[used])) + 1
     if count >= grid.sections:
@@ -98,7 +105,7 @@ def refined(job: Job, accuracy: float, progress: object) -> Result:
         fine = job.run(job.grid(finer), True, rtol, progress)
         # where the particles went is known then, and a wider grid can take it into use from the start
         reached = _reached(fine)
-        wide = reached.coarser(STEP) if sized else reached
+        wide = job.scheme.coarser(reached, STEP) if sized else reached
         loose = job.run(wide, False, min(TIGHTER * rtol, 1e-2), progress, yardstick=True)
         runs += 2
         full = job.order(fine.grid)
@@ -117,7 +124,7 @@ def refined(job: Job, accuracy: float, progress: object) -> Result:
             fine,
             loose,
             partial(job.run, wide, False, rtol, yardstick=True),
-            order,
+            _apart(reached, wide, STEP) ** order - 1.0,
             accuracy,
             FLOOR * rtol,
             runs,
@@ -147,17 +154,16 @@ def _compared(
     fine: Result,
     loose: Result,
     tighten: Callable[[], Result],
-    order: float,
+    over: float,
     accuracy: float,
     floor: float,
     runs: int,
 ) -> ErrorEstimate:
     """Estimate from a run and one on a wider grid at a looser tolerance, which `tighten` repeats at the tight one."""
     (one, ends), other = _ends(fine, job), Snapshot.of(loose)
-    if not math.isfinite(order):
+    if not math.isfinite(over):
         pairs = (Comparison("time", one, other, TIME_OVER), *ends)
         return ErrorEstimate(fine.times, pairs, None, floor, accuracy, runs)
-    over = STEP**order - 1.0
 
     def apart() -> tuple[Comparison, ...]:
         middle = Snapshot.of(tighten())

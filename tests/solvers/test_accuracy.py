@@ -131,3 +131,22 @@ def test_outputs_without_particles_have_no_error() -> None:
     assert error["number"][0] == error["d50"][0] == error.floor
     assert 0.0 < error.largest < 1e-3
     assert "d50" in repr(error)
+
+
+@pytest.mark.parametrize(
+    "scheme", [ag.Sectional(), ag.CellAverage(), ag.FiniteVolume(), ag.FixedPivot(moments=4)]
+)
+def test_every_scheme_has_estimates(scheme: ag.schemes.Scheme) -> None:
+    asked = ag.simulate(CONSTANT, EXPONENTIAL, 10.0, scheme=scheme, accuracy=3e-2)
+    assert asked.error.met
+    grid = ag.SizeGrid.geometric(smallest=1e-4, largest=1e4, per_doubling=3)
+    plain = ag.simulate(CONSTANT, EXPONENTIAL, 10.0, scheme=scheme, grid=grid)
+    true = misses(plain, closed.CONSTANT_EXP)["M2"][0]
+    assert plain.error["M2"][0] >= true / 3.0
+
+
+def test_one_section_per_doubling_has_no_coarser_grid_for_the_sectional_scheme() -> None:
+    grid = ag.SizeGrid.geometric(smallest=1e-4, largest=1e4, per_doubling=1)
+    result = ag.simulate(CONSTANT, EXPONENTIAL, 1.0, scheme=ag.Sectional(), grid=grid)
+    with pytest.raises(ag.errors.GridError, match="no coarser grid"):
+        _ = result.error
