@@ -1,4 +1,4 @@
-"""One quick record and one table of error estimates for the whole session."""
+"""One quick record and one table of error estimates for all tests of this folder."""
 
 from __future__ import annotations
 
