@@ -18,6 +18,7 @@ from aggsim.errors import GridError
 _NEGATIVE_SHARE = 5e-3  # a spline that undershoots more than this does not resolve the distribution
 _SUM_DIFFERS = 1e-2  # nor does one whose integral differs by more from the sum over the sections
 _STEPS = 14  # of Newton's method with halving; a cubic needs some 6, a bend at an end a few more
+_SETTLED = 4e-15  # in kappa
 _HALVINGS = 48  # bisections of one section: kappa to 4e-15
 _WILD_BEND = 3.0  # half the change of bend along a section; from 4 on the curve would not rise everywhere
 
@@ -154,17 +155,20 @@ class Cumulative:
         low, high = low - origin, high - origin
         powers = [power[rows, piece] for power in self.power]  # looked up once, not at every step
         offset = 0.5 * (low + high)
-        for _ in range(_STEPS):
-            value, slope = powers[0], np.zeros_like(offset)
-            for power in powers[1:]:
-                slope = slope * offset + value
-                value = value * offset + power
-            short = value < p
-            low, high = np.where(short, offset, low), np.where(short, high, offset)
-            # Newton's step where it stays inside, halving elsewhere
-            with np.errstate(divide="ignore", invalid="ignore"):
+        with np.errstate(divide="ignore", invalid="ignore"):
+            for _ in range(_STEPS):
+                value, slope = powers[0], np.zeros_like(offset)
+                for power in powers[1:]:
+                    slope = slope * offset + value
+                    value = value * offset + power
+                short = value < p
+                low, high = np.where(short, offset, low), np.where(short, high, offset)
+                # Newton's step where it stays inside, halving elsewhere
                 step = offset - (value - p) / slope
-            offset = np.where((step >= low) & (step <= high), step, 0.5 * (low + high))
+                before = offset
+                offset = np.where((step >= low) & (step <= high), step, 0.5 * (low + high))
+                if np.abs(offset - before).max() <= _SETTLED:
+                    break
         return np.asarray(origin + offset)
 
     def _value(self, piece: NDArray[np.intp], kappa: FloatArray) -> FloatArray:
