@@ -3,18 +3,18 @@
 from __future__ import annotations
 
 import math
-import warnings
 from dataclasses import replace
+from typing import Any
 
 import numpy as np
 from scipy import constants
 from scipy.optimize import brentq, minimize_scalar
 
 from aggsim._checks import count, refuse
-from aggsim.errors import InputError, ValidityWarning
+from aggsim.errors import InputError
 from aggsim.inputs import Medium, Particles
 from aggsim.interaction.models import SUPERPOSITION, UNRETARDED, DoubleLayer, Repulsion, VanDerWaals
-from aggsim.interaction.profile import PairEnergy, pair_energy
+from aggsim.interaction.profile import PairEnergy, assembled_pair, pair_energy
 
 _LEAST_SALT, _MOST_SALT = 1e-6, 2e4  # mol/m3, the ends of the search
 _CLOSEST = 1e-13  # m
@@ -60,25 +60,46 @@ def critical_coagulation_concentration(
     ----------
     .. [1] E. J. W. Verwey, J. Th. G. Overbeek (1948), Theory of the Stability of Lyophobic Colloids, Elsevier.
     """
+    parts: dict[str, Any] = {
+        "double_layer": double_layer,
+        "van_der_waals": van_der_waals,
+        "steric": steric,
+        "short_range": short_range,
+    }
+    salt = critical_ionic_strength(particles, medium, **parts)
+    pair_energy(
+        particles, replace(medium, ionic_strength=salt), **parts
+    )  # warns of what is beyond range there
+    return salt / int(getattr(double_layer, "valence", 1)) ** 2
+
+
+def critical_ionic_strength(
+    particles: Particles,
+    medium: Medium,
+    *,
+    double_layer: Any = SUPERPOSITION,
+    van_der_waals: Any = UNRETARDED,
+    steric: Any = None,
+    short_range: Any = None,
+) -> float:
+    """Ionic strength [mol/m3] at the critical coagulation concentration, without a word on the range of the models.
+
+    Arguments and errors as in `critical_coagulation_concentration`.
+    """
     for name, model in (("double_layer", double_layer), ("van_der_waals", van_der_waals)):
         if model is None:
             refuse(name, None, "a model; without it there is no critical concentration", f"leave {name} out")
     if not isinstance(medium, Medium):
         refuse("medium", repr(medium), "Medium", "Medium.water(temperature=298.15)")
 
-    def pair(salt: float) -> PairEnergy:
-        return pair_energy(
-            particles,
-            replace(medium, ionic_strength=salt),
-            double_layer=double_layer,
-            van_der_waals=van_der_waals,
-            steric=steric,
-            short_range=short_range,
-        )
-
-    with warnings.catch_warnings():
-        warnings.simplefilter("ignore", ValidityWarning)  # the search crosses the limits of the models
-        template = pair(100.0)
+    template = assembled_pair(
+        particles,
+        replace(medium, ionic_strength=100.0),
+        double_layer=double_layer,
+        van_der_waals=van_der_waals,
+        steric=steric,
+        short_range=short_range,
+    )
 
     def excess(log_salt: float) -> float:
         salt = math.exp(log_salt)
@@ -96,9 +117,7 @@ def critical_coagulation_concentration(
             f"the energy still rises above zero at {_MOST_SALT:g} mol/m3, so that no amount of salt coagulates: there "
             f"is no critical coagulation concentration. Try: a model without a repulsion that salt does not screen."
         )
-    salt = math.exp(brentq(excess, low, high, xtol=1e-12, rtol=1e-14))
-    pair(salt)
-    return salt / int(getattr(double_layer, "valence", 1)) ** 2
+    return math.exp(brentq(excess, low, high, xtol=1e-12, rtol=1e-14))
 
 
 def critical_coagulation_closed_form(particles: Particles, medium: Medium, valence: int = 1) -> float:

@@ -244,6 +244,33 @@ def pair_energy(
     .. [1] B. V. Derjaguin, L. D. Landau (1941), Acta Physicochim. URSS 14, 633.
     .. [2] E. J. W. Verwey, J. Th. G. Overbeek (1948), Theory of the Stability of Lyophobic Colloids, Elsevier.
     """
+    pair = assembled_pair(
+        particles,
+        medium,
+        other,
+        double_layer=double_layer,
+        van_der_waals=van_der_waals,
+        steric=steric,
+        short_range=short_range,
+    )
+    _warn(pair)
+    return pair
+
+
+def assembled_pair(
+    particles: Particles,
+    medium: Medium,
+    other: Particles | None = None,
+    *,
+    double_layer: DoubleLayer | None = SUPERPOSITION,
+    van_der_waals: VanDerWaals | None = UNRETARDED,
+    steric: Repulsion | None = None,
+    short_range: Repulsion | None = None,
+) -> PairEnergy:
+    """Check and combine the parts as `pair_energy` does, without a word on the range of the models.
+
+    For searches and scans that pass through conditions in which nobody asked for an energy.
+    """
     second = particles if other is None else other
     _require("particles", particles, Particles, "Particles(diameter=..., density=...)")
     _require("other", second, Particles, "Particles(diameter=..., density=...)")
@@ -283,7 +310,6 @@ def pair_energy(
         short_range=short_range,
     )
     pair(1e-9)  # what a part lacks in the medium shows here, not in the middle of a calculation
-    _warn(pair)
     return pair
 
 

@@ -3,18 +3,17 @@
 from __future__ import annotations
 
 import math
-import warnings
 from collections.abc import Callable
 from dataclasses import dataclass, replace
+from typing import Any
 
 from scipy.optimize import brentq
 
 from aggsim._checks import scalar
-from aggsim.errors import ValidityWarning
 from aggsim.inputs import Medium, Particles
 from aggsim.interaction.fuchs import log_stability_ratio
 from aggsim.interaction.models import SUPERPOSITION, UNRETARDED, DoubleLayer, Repulsion, VanDerWaals
-from aggsim.interaction.profile import PairEnergy, pair_energy
+from aggsim.interaction.profile import assembled_pair, pair_energy
 
 _MOST_POTENTIAL = 0.3  # V, the limit of Particles
 _LEAST_SALT, _MOST_SALT = 1e-4, 2e4  # mol/m3: pure water, and the limit of Medium
@@ -98,19 +97,13 @@ def required_barrier(
     seconds = scalar("time", time, "s", above=0.0)
     share = scalar("share_single", share_single, above=0.0, below=1.0, hint="0.9 for nine of ten")
 
-    def pair(potential: float) -> PairEnergy:
-        return pair_energy(
-            replace(particles, surface_potential=potential),
-            medium,
-            double_layer=double_layer,
-            van_der_waals=van_der_waals,
-            steric=steric,
-            short_range=short_range,
-        )
-
-    with warnings.catch_warnings():
-        warnings.simplefilter("ignore", ValidityWarning)  # the search crosses the limits of the models
-        template = pair(0.0)
+    parts: dict[str, Any] = {
+        "double_layer": double_layer,
+        "van_der_waals": van_der_waals,
+        "steric": steric,
+        "short_range": short_range,
+    }
+    template = assembled_pair(replace(particles, surface_potential=0.0), medium, **parts)
     half_rate = 4.0 * medium.thermal_energy / (3.0 * medium.viscosity)
     target = math.log(half_rate) + math.log(amount) + math.log(seconds)
     target -= math.log(math.expm1(-0.5 * math.log(share)))
@@ -130,10 +123,13 @@ def required_barrier(
         )
         if log_salt is not None:
             salt = math.inf if log_salt == -math.log(_MOST_SALT) else math.exp(-log_salt)
+    barrier = None
+    if potential is not None:
+        barrier = pair_energy(replace(particles, surface_potential=potential), medium, **parts).barrier
     return RequiredBarrier(
         stability_ratio=math.exp(target),
         surface_potential=potential,
-        barrier=None if potential is None else pair(potential).barrier,
+        barrier=barrier,
         ionic_strength=salt,
     )
 

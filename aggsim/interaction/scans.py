@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import math
-import warnings
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from typing import Any
@@ -12,12 +11,12 @@ import numpy as np
 
 from aggsim import _checks
 from aggsim._checks import FloatArray
-from aggsim.errors import InputError, ValidityWarning
+from aggsim.errors import InputError
 from aggsim.inputs import Medium, Particles
-from aggsim.interaction.critical import critical_coagulation_concentration
+from aggsim.interaction.critical import critical_ionic_strength
 from aggsim.interaction.fuchs import log_stability_ratio
 from aggsim.interaction.models import ConstantCharge, ConstantPotential, LinearSuperposition
-from aggsim.interaction.profile import pair_energy
+from aggsim.interaction.profile import assembled_pair
 
 MODELS = (LinearSuperposition(), ConstantPotential(), ConstantCharge())
 
@@ -75,20 +74,16 @@ def salt_scan(
     salts = _checks.array("ionic_strength", ionic_strength, "mol/m3", above=0.0, increasing=True)
     ratios: dict[str, FloatArray] = {}
     critical: dict[str, float | None] = {}
-    with warnings.catch_warnings():
-        warnings.simplefilter("ignore", ValidityWarning)  # a scan crosses the limits of its models on purpose
-        for model in double_layers:
-            liquids = [replace(medium, ionic_strength=float(salt)) for salt in salts]
-            ratios[model_name(model)] = np.array(
-                [_log10_ratio(particles, liquid, model, hydrodynamics, options) for liquid in liquids]
-            )
-            try:
-                found = critical_coagulation_concentration(particles, medium, double_layer=model, **options)
-            except InputError:
-                critical[model_name(model)] = None
-            else:
-                # a z:z electrolyte of concentration c has the ionic strength z**2 c
-                critical[model_name(model)] = found * getattr(model, "valence", 1) ** 2
+    for model in double_layers:
+        liquids = [replace(medium, ionic_strength=float(salt)) for salt in salts]
+        name = model_name(model)
+        ratios[name] = np.array(
+            [_log10_ratio(particles, liquid, model, hydrodynamics, options) for liquid in liquids]
+        )
+        try:
+            critical[name] = critical_ionic_strength(particles, medium, double_layer=model, **options)
+        except InputError:
+            critical[name] = None
     return SaltScan(salts, ratios, critical)
 
 
@@ -109,17 +104,13 @@ def stability_map(
     potentials = _checks.array("surface_potential", surface_potential, "V", increasing=True)
     salts = _checks.array("ionic_strength", ionic_strength, "mol/m3", above=0.0, increasing=True)
     ratios = {}
-    with warnings.catch_warnings():
-        warnings.simplefilter("ignore", ValidityWarning)
-        for model in double_layers:
-            rows = []
-            for potential in potentials:
-                grains = replace(particles, surface_potential=float(potential))
-                liquids = [replace(medium, ionic_strength=float(salt)) for salt in salts]
-                rows.append(
-                    [_log10_ratio(grains, liquid, model, hydrodynamics, options) for liquid in liquids]
-                )
-            ratios[model_name(model)] = np.array(rows)
+    for model in double_layers:
+        rows = []
+        for potential in potentials:
+            grains = replace(particles, surface_potential=float(potential))
+            liquids = [replace(medium, ionic_strength=float(salt)) for salt in salts]
+            rows.append([_log10_ratio(grains, liquid, model, hydrodynamics, options) for liquid in liquids])
+        ratios[model_name(model)] = np.array(rows)
     return StabilityMap(potentials, salts, ratios)
 
 
@@ -131,5 +122,7 @@ def model_name(model: Any) -> str:
 def _log10_ratio(
     particles: Particles, medium: Medium, model: Any, hydrodynamics: bool, options: Mapping[str, Any]
 ) -> float:
-    energy = pair_energy(particles, medium, double_layer=model, **options)
+    energy = assembled_pair(
+        particles, medium, double_layer=model, **options
+    )  # a scan crosses limits on purpose
     return log_stability_ratio(energy, hydrodynamics=hydrodynamics) / math.log(10.0)

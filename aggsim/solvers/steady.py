@@ -15,15 +15,15 @@ from aggsim.result import SteadyBalance, SteadyCurve, SteadyState
 from aggsim.schemes import BEYOND, Scheme
 from aggsim.sizes import SizeGrid, StartingDistribution
 from aggsim.solvers.growth import BEYOND_SHARE
+from aggsim.solvers.job import Job
 from aggsim.solvers.ladder import Ladder
 from aggsim.solvers.methods import BDF
 from aggsim.solvers.newton import Found, Search
 from aggsim.solvers.setting import default_grid, default_scheme, expect, project_or_none, starts_of
-from aggsim.solvers.simulate import simulate
 from aggsim.vessels import Vessel
 
 UNSEEN = 1e-12  # share of the volume past the top, in the time of the quickest section, that is not looked at
-UNSEEN = 1e-12  # share of the volume past the top, in the time of the quickest section, that is not looked at
+HELP_TOLERANCE = 1e-6  # rtol of that integration; Newton's method finds the rest
 DECADES = 12  # of time that the help of an integration may cover
 
 
@@ -197,17 +197,12 @@ def _with_help(search: Search, starts: list[StartingDistribution | None], automa
     if fastest == 0.0:
         return None
     for decade in range(2, DECADES):
-        times = [0.0, 10.0**decade / fastest]
-        chosen = None if automatic else grid
-        with warnings.catch_warnings():
-            warnings.simplefilter("ignore", AccuracyWarning)  # what counts is the state that is found
-            late = simulate(
-                search.vessel, starts, times, grid=chosen, scheme=scheme, method=BDF(), raise_unfinished=False
-            )
+        times = np.array([0.0, 10.0**decade / fastest])
+        late = Job(search.vessel, starts, times, scheme, BDF()).run(grid, automatic, HELP_TOLERANCE)
         if not late.status.completed:
             return None
         tanks = np.array([tank.number[-1] for tank in late.tanks] or [late.number[-1]])
-        found = search.newton(tanks, late.grid, times[-1])
+        found = search.newton(tanks, late.grid, float(times[-1]))
         if found is not None:
             return found
     return None

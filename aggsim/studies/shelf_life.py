@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import math
-import warnings
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from typing import Any
@@ -12,7 +11,7 @@ import numpy as np
 
 from aggsim import _checks
 from aggsim._checks import FloatArray
-from aggsim.errors import InputError, ValidityWarning
+from aggsim.errors import InputError
 from aggsim.inputs import Compact, Medium, Particles
 from aggsim.interaction import (
     ConstantCharge,
@@ -22,6 +21,7 @@ from aggsim.interaction import (
     model_name,
     pair_energy,
 )
+from aggsim.interaction.profile import assembled_pair
 from aggsim.kernels import brownian
 from aggsim.sizes import StartingDistribution
 from aggsim.solvers.simulate import simulate
@@ -202,9 +202,9 @@ def shelf_life(
         inputs = {**centre, **changed}
         grain = replace(particles, surface_potential=inputs["surface_potential"], hamaker=inputs["hamaker"])
         liquid = replace(medium, ionic_strength=inputs["ionic_strength"])
-        with warnings.catch_warnings():
-            warnings.simplefilter("ignore", ValidityWarning)  # said once, for the central inputs, below
-            energy = pair_energy(grain, liquid, double_layer=model, **options)
+        energy = assembled_pair(
+            grain, liquid, double_layer=model, **options
+        )  # the range is judged once, below
         log_ratio = log_stability_ratio(energy)
         return math.log10(rapid) + log_ratio / math.log(10.0)
 

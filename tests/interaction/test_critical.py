@@ -1,15 +1,18 @@
 from __future__ import annotations
 
-import warnings
 from dataclasses import replace
 
 import pytest
-from hypothesis import given
+from hypothesis import assume, given
 from hypothesis import strategies as st
 
 from aggsim.errors import InputError, ValidityWarning
 from aggsim.inputs import Medium, Particles
-from aggsim.interaction.critical import critical_coagulation_closed_form, critical_coagulation_concentration
+from aggsim.interaction.critical import (
+    critical_coagulation_closed_form,
+    critical_coagulation_concentration,
+    critical_ionic_strength,
+)
 from aggsim.interaction.fuchs import log_stability_ratio
 from aggsim.interaction.models import ConstantCharge, ConstantPotential, Hamaker, LinearSuperposition
 from aggsim.interaction.profile import pair_energy
@@ -26,14 +29,27 @@ def test_root_on_the_curve_agrees_with_the_closed_form(
 ) -> None:
     particles = Particles(diameter=diameter, density=1055.0, hamaker=hamaker, surface_potential=potential)
     closed = critical_coagulation_closed_form(particles, WATER, valence)
-    if not 1e-6 < closed * valence**2 < 2e4:
-        return
-    with warnings.catch_warnings():
-        warnings.simplefilter("ignore", ValidityWarning)
-        found = critical_coagulation_concentration(
-            particles, WATER, double_layer=LinearSuperposition(valence=valence), van_der_waals=NEAR
-        )
-    assert found == pytest.approx(closed, rel=1e-9)
+    assume(1e-6 < closed * valence**2 < 2e4)
+    found = critical_ionic_strength(
+        particles, WATER, double_layer=LinearSuperposition(valence=valence), van_der_waals=NEAR
+    )
+    assert found / valence**2 == pytest.approx(closed, rel=1e-9)
+
+
+def test_the_concentration_is_the_ionic_strength_over_the_square_of_the_valence() -> None:
+    model = LinearSuperposition(valence=2)
+    ionic = critical_ionic_strength(LATEX, WATER, double_layer=model)
+    assert critical_coagulation_concentration(LATEX, WATER, double_layer=model) == ionic / 4
+
+
+def test_what_is_beyond_range_is_said_at_the_concentration_found() -> None:
+    high = replace(LATEX, surface_potential=0.06)
+    model = LinearSuperposition()
+    assert critical_coagulation_concentration(high, WATER, double_layer=model) > 0.0  # inside its range
+    tiny = replace(LATEX, diameter=1e-9)
+    with pytest.warns(ValidityWarning, match="kappa a"):
+        found = critical_coagulation_concentration(tiny, WATER, double_layer=model)
+    assert found == critical_ionic_strength(tiny, WATER, double_layer=model)
 
 
 @pytest.mark.parametrize("model", [LinearSuperposition(), ConstantPotential(), ConstantCharge()])

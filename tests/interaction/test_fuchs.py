@@ -1,7 +1,6 @@
 from __future__ import annotations
 
 import math
-import warnings
 from collections.abc import Callable
 from itertools import pairwise
 
@@ -12,11 +11,11 @@ from hypothesis import strategies as st
 from scipy.integrate import quad
 
 from aggsim._checks import FloatArray
-from aggsim.errors import AccuracyWarning, InputError, ValidityWarning
+from aggsim.errors import AccuracyWarning, InputError
 from aggsim.inputs import Medium, Particles
 from aggsim.interaction.fuchs import capped_ratio, log_fuchs, log_stability_ratio, stability_ratio
 from aggsim.interaction.models import ConstantCharge, ConstantPotential, Hamaker, LinearSuperposition
-from aggsim.interaction.profile import PairEnergy, pair_energy
+from aggsim.interaction.profile import PairEnergy, assembled_pair, pair_energy
 from aggsim.interaction.repulsions import Born, Brush
 
 KT = Medium(temperature=298.15, viscosity=0.89e-3, density=997.0).thermal_energy
@@ -37,10 +36,8 @@ def grain(diameter: float, potential: float = 0.025, hamaker: float = 1e-20) -> 
 
 
 def pair(diameter: float, salt: float, potential: float = 0.025, other: float | None = None) -> PairEnergy:
-    with warnings.catch_warnings():
-        warnings.simplefilter("ignore", ValidityWarning)
-        second = None if other is None else grain(other, potential)
-        return pair_energy(grain(diameter, potential), water(salt), second)
+    second = None if other is None else grain(other, potential)
+    return assembled_pair(grain(diameter, potential), water(salt), second)
 
 
 def plain(function: Callable[[FloatArray], FloatArray], hydrodynamics: bool = False) -> float:
@@ -195,12 +192,10 @@ def test_the_ratio_stops_at_a_number_that_can_be_divided_by() -> None:
 def test_always_finite(
     one: float, other: float, salt: float, potential: float, model: object, hydrodynamics: bool
 ) -> None:
-    with warnings.catch_warnings():
-        warnings.simplefilter("ignore", ValidityWarning)
-        first, second = grain(10.0**one, potential), grain(10.0**other, potential)
-        energy = pair_energy(first, water(10.0**salt), second, double_layer=model)  # type: ignore[arg-type]
-        swapped = pair_energy(second, water(10.0**salt), first, double_layer=model)  # type: ignore[arg-type]
-        rapid = pair_energy(first, water(10.0**salt), second, double_layer=None)
+    first, second = grain(10.0**one, potential), grain(10.0**other, potential)
+    energy = assembled_pair(first, water(10.0**salt), second, double_layer=model)  # type: ignore[arg-type]
+    swapped = assembled_pair(second, water(10.0**salt), first, double_layer=model)  # type: ignore[arg-type]
+    rapid = assembled_pair(first, water(10.0**salt), second, double_layer=None)
     found = log_stability_ratio(energy, hydrodynamics=hydrodynamics)
     assert math.isfinite(found)
     assert 0.1 < stability_ratio(energy, hydrodynamics=hydrodynamics) <= 1e300

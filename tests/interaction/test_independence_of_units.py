@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import warnings
 from dataclasses import dataclass
 
 import pytest
@@ -10,8 +9,8 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 import aggsim as ag
-from aggsim.errors import ValidityWarning
-from aggsim.interaction import ConstantCharge, ConstantPotential, log_stability_ratio, pair_energy
+from aggsim.interaction import ConstantCharge, ConstantPotential, log_stability_ratio
+from aggsim.interaction.profile import assembled_pair
 
 FACTORS = {"nm": 1e-9, "m": 1.0, "mV": 1e-3, "V": 1.0, "zJ": 1e-21, "J": 1.0, "mol/m3": 1.0, "umol/m3": 1e-6}
 
@@ -28,9 +27,7 @@ class Quantity:
 
 
 def log_ratio(particles: ag.Particles, medium: ag.Medium, model: object) -> float:
-    with warnings.catch_warnings():
-        warnings.simplefilter("ignore", ValidityWarning)
-        return log_stability_ratio(pair_energy(particles, medium, double_layer=model))
+    return log_stability_ratio(assembled_pair(particles, medium, double_layer=model))
 
 
 @given(st.floats(50.0, 500.0), st.floats(10.0, 40.0), st.floats(3.0, 15.0), st.floats(5.0, 200.0))

@@ -1,13 +1,12 @@
 from __future__ import annotations
 
 import math
-import warnings
 from dataclasses import replace
 
 import pytest
 
 import aggsim as ag
-from aggsim.errors import InputError, ValidityWarning
+from aggsim.errors import InputError
 from aggsim.studies.shelf_life import duration
 
 LATEX = ag.Particles(diameter=200e-9, density=1055.0, hamaker=9e-21, surface_potential=-0.028)
@@ -17,9 +16,7 @@ ONE = (ag.interaction.LinearSuperposition(),)
 
 
 def life(**options: object) -> ag.ShelfLife:
-    with warnings.catch_warnings():
-        warnings.simplefilter("ignore", ValidityWarning)
-        return ag.shelf_life(LATEX, WATER, START, **options)  # type: ignore[arg-type]
+    return ag.shelf_life(LATEX, WATER, START, **options)  # type: ignore[arg-type]
 
 
 def test_time_is_that_of_rapid_coagulation_times_the_stability_ratio() -> None:
