@@ -114,6 +114,12 @@ def _estimates(rows: Sequence[effectivity.Row]) -> list[str]:
         shares = f"{row.safe / row.figures:7.0%}{row.tight / row.figures:7.0%}"
         found = f"{row.figures:8d}{shares}{row.error:10.1e}{row.estimate:10.1e}"
         lines.append(f"  {row.problem:58s}  {row.mode:14s}{found}")
+    unmet = [row for row in rows if row.unmet]
+    if unmet:
+        lines += ["", f"Requests whose own estimate is above the {effectivity.ASKED:g} that was asked for"]
+        lines += [
+            f"  {row.problem}: estimate {row.estimate:.1e}, largest error {row.error:.1e}" for row in unmet
+        ]
     unsafe = [f"{row.problem}, {row.mode}: {figure}" for row in rows for figure in row.outside]
     if unsafe:
         lines += ["", "Figures whose estimate is not safe"]
