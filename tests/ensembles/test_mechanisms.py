@@ -24,13 +24,11 @@ def law(rate: Any = lambda v: v, **options: Any) -> ag.Breakage:
 
 
 class Averages:
-    """Fragments that are known by their averages alone."""
+    """Halves that are known by their averages alone."""
 
-    def pieces(self, parent: Any) -> Any:
-        return 2.0
-
-    def point_masses(self, volume: Any, parents: Any) -> Any:
-        raise NotImplementedError
+    def __init__(self) -> None:
+        law = ag.fragments.equal_binary()
+        self.pieces, self.point_masses = law.pieces, law.point_masses
 
 
 def test_parts_without_strength_are_one_mechanism() -> None:

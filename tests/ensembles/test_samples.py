@@ -28,7 +28,7 @@ def run_of(
 
 
 def silent(time: float) -> None:
-    pass
+    """Progress that nobody follows."""
 
 
 def test_a_sample_is_doubled_when_half_of_it_is_left() -> None:

@@ -21,13 +21,11 @@ EXP = ag.Exponential(mean_volume=1.0, number=1.0)
 
 
 class WholePieces:
-    """Two pieces of whole volumes; averages are not needed here."""
+    """Two pieces of whole volumes, drawn; its averages, those of a uniform law, stand in no test here."""
 
-    def pieces(self, parent: Array) -> Array:
-        return np.full(np.shape(parent), 2.0)
-
-    def point_masses(self, volume: Array, parents: Array) -> Any:
-        raise NotImplementedError
+    def __init__(self) -> None:
+        law = ag.fragments.uniform_binary()
+        self.pieces, self.point_masses = law.pieces, law.point_masses
 
     def sample(self, parent: Array, generator: np.random.Generator) -> Array:
         part = generator.integers(1, np.rint(parent).astype(int)).astype(float)
@@ -36,7 +34,7 @@ class WholePieces:
 
 BOTH = Reversible(0.125)  # half as many particles in the end
 CLOSED = [
-    # sources of the closed solutions: see closed_solutions and closed_breakage
+    # sources of the closed solutions: see aggsim/verification/closed.py
     ("constant", ag.Batch(ag.kernels.constant(1.0)), MONO, [1.0, 5.0], lambda t: 1 / (1 + t / 2)),
     ("constant, exponential", ag.Batch(ag.kernels.constant(1.0)), EXP, [1.0, 5.0], lambda t: 1 / (1 + t / 2)),
     ("sum", ag.Batch(ag.kernels.additive(1.0)), MONO, [0.5, 1.5], lambda t: np.exp(-t)),
